@@ -26,18 +26,17 @@ func (m *Model) Saturation(T float64) (Saturation, error) {
 		return Saturation{}, err
 	}
 	tau, dlntau := m.Tau(T)
-	c := m.saturate(tau)
-	if !c.ok {
-		return Saturation{}, &ConvergenceError{m.Fluid, m.Equation, "saturation pressure", T, "K", 0, c.p, c.gap, c.iterations}
+	c, ok := m.Saturate(tau)
+	if !ok {
+		return Saturation{}, &ConvergenceError{m.Fluid, m.Equation, "saturation pressure", T, "K", 0, c.P, c.Gap, c.Iterations}
 	}
 	k := GasConstant * T / m.B
-	dp, _, _ := m.saturationSlopes(c, tau)
 	return Saturation{
-		T: T, P: c.p * k, Vl: c.xl * m.B, Vv: c.xv * m.B,
-		LnFugacity: m.Form.LnFugacity(c.xv, tau) + math.Log(k),
-		Gap:        c.gap,
-		DPDT:       k * (c.p/T + dp*tau*dlntau),
-		Iterations: c.iterations,
+		T: T, P: c.P * k, Vl: c.Xl * m.B, Vv: c.Xv * m.B,
+		LnFugacity: m.Form.LnFugacity(c.Xv, tau) + math.Log(k),
+		Gap:        c.Gap,
+		DPDT:       k * (c.P/T + c.DP*tau*dlntau),
+		Iterations: c.Iterations,
 	}, nil
 }
 
@@ -149,4 +148,41 @@ func (m *Model) spinodalAt(x float64, ok bool, P float64, quantity string) (Spin
 		return SpinodalState{}, &ConvergenceError{m.Fluid, m.Equation, quantity, P, "Pa", 1, m.XC, math.Inf(1), 0}
 	}
 	return SpinodalState{T: T, P: P, V: x * m.B}, nil
+}
+
+// SpinodalGradient returns, at a state of either spinodal branch, the change of
+// its temperature with pressure in K/Pa and, at constant pressure, with the
+// tuning (attraction, covolume, slope) in K. Because ∂P/∂v = 0 on the spinodal
+// the volume does not enter: with k = RT/b and P = k·p(x, τ),
+//
+//	dP = (∂P/∂T)_v dT − kτ/q·dlnτ − P·dlnb.
+func (m *Model) SpinodalGradient(s SpinodalState) (pressure float64, tuning [3]float64) {
+	tau, dlntau := m.Tau(s.T)
+	k, x := GasConstant*s.T/m.B, s.V/m.B
+	h := k * tau / m.q(x)
+	dPdT := s.P/s.T - h*dlntau
+	a, c, sl := m.TauGradient(s.T)
+	return 1 / dPdT, [3]float64{h * a / dPdT, (h*c + s.P/m.tuning.Covolume) / dPdT, h * sl / dPdT}
+}
+
+// ZeroPressureSpinodalTemperature is the highest temperature in K at which the
+// liquid can exist at zero pressure, in closed form: the liquid spinodal has
+// p = 0 at x = 1 + √((1+δ₁)(1+δ₂)).
+func (m *Model) ZeroPressureSpinodalTemperature() float64 { return m.temperature(m.tau0) }
+
+// DensityDifference returns ln(1/x_l − 1/x_v), the logarithm of the difference of
+// the saturated densities times b, at T, and its derivative with respect to lnτ.
+//
+// Errors: those of Saturation.
+func (m *Model) DensityDifference(T float64) (ln, dlntau float64, err error) {
+	if err := m.checkSubcritical("saturated densities", T); err != nil {
+		return 0, 0, err
+	}
+	tau, _ := m.Tau(T)
+	c, ok := m.Saturate(tau)
+	if !ok {
+		return 0, 0, &ConvergenceError{m.Fluid, m.Equation, "saturated densities", T, "K", 0, c.P, c.Gap, c.Iterations}
+	}
+	d := (c.Xv - c.Xl) / (c.Xl * c.Xv)
+	return math.Log(d), tau * (c.DXv/(c.Xv*c.Xv) - c.DXl/(c.Xl*c.Xl)) / d, nil
 }

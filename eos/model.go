@@ -14,6 +14,7 @@ type Model struct {
 	// B is the covolume b in m³/mol.
 	B float64
 
+	tuning  Tuning
 	inputTc float64 // the fluid's constant, the reference of Tr in α
 	tau1    float64 // τ at T = inputTc
 	power   bool    // α = Tr^(−n), else Soave's form
@@ -54,6 +55,7 @@ func NewModel(e Equation, s Substance, t Tuning) (Model, error) {
 	m := Model{
 		Form: form, Fluid: s.Name, Equation: e.Name,
 		B:       t.Covolume * form.OmegaB() * GasConstant * s.CriticalT / s.CriticalP,
+		tuning:  t,
 		inputTc: s.CriticalT,
 		tau1:    form.TauC * t.Attraction / t.Covolume,
 	}
@@ -121,17 +123,21 @@ func (m *Model) temperature(tau float64) float64 {
 	return m.inputTc * sr * sr
 }
 
-// TauTuning returns the derivatives of lnτ at constant T with respect to the
-// tuning: ∂lnτ/∂attraction·attraction = 1, ∂lnτ/∂covolume·covolume = −1, and
-// ∂lnτ/∂slope, which is the number returned.
-func (m *Model) TauTuning(T float64) float64 {
+// TauGradient returns the derivatives of lnτ at constant T with respect to the
+// tuning: lnτ = ln attraction − ln covolume + ln α(slope) + const.
+func (m *Model) TauGradient(T float64) (attraction, covolume, slope float64) {
 	r := T / m.inputTc
 	if m.power {
-		return -m.dcds * math.Log(r)
+		slope = -m.dcds * math.Log(r)
+	} else {
+		h := 1 - math.Sqrt(r)
+		slope = 2 * m.dcds * h / (1 + m.c*h)
 	}
-	h := 1 - math.Sqrt(r)
-	return 2 * m.dcds * h / (1 + m.c*h)
+	return 1 / m.tuning.Attraction, -1 / m.tuning.Covolume, slope
 }
+
+// Tuning returns the factors that the model was made with.
+func (m *Model) Tuning() Tuning { return m.tuning }
 
 // Attraction is a(T) in Pa·m⁶/mol².
 func (m *Model) Attraction(T float64) float64 {

@@ -12,17 +12,23 @@ import "math"
 // The solution x_l = x_v of equal fugacity is excluded: each root is sought on
 // its own side of the spinodal.
 
-// coexistence is a saturation state in reduced variables.
-type coexistence struct {
-	p, xl, xv  float64
-	gap        float64 // F_l − F_v left
-	iterations int
-	ok         bool
+// Coexistence is a saturation state in reduced variables.
+type Coexistence struct {
+	P, Xl, Xv    float64 // p, x_l, x_v
+	DP, DXl, DXv float64 // their derivatives with respect to τ along the line
+	Gap          float64 // F_l − F_v left
+	Iterations   int
 }
 
-// saturate returns the coexistence at τ > τ_c.
-func (f *Form) saturate(tau float64) coexistence {
-	var c coexistence
+// Saturate returns the coexistence at τ; ok is false for τ ≤ τ_c, or when the
+// search does not end.
+//
+// The slopes follow from equal F and ∂F/∂τ = −I at constant p:
+// dp/dτ = (I_v − I_l)/(x_v − x_l).
+func (f *Form) Saturate(tau float64) (c Coexistence, ok bool) {
+	if !(tau > f.TauC) {
+		return c, false
+	}
 	// The pressure lies between the liquid spinodal (cut at zero) and the vapour
 	// spinodal; the ends are found only when a step needs them.
 	lo, hi := 0.0, 0.0
@@ -36,7 +42,7 @@ func (f *Form) saturate(tau float64) coexistence {
 		p = 0.5 * (lo + hi)
 	}
 	var xl, xv float64
-	for c.iterations = 1; c.iterations <= 60; c.iterations++ {
+	for c.Iterations = 1; c.Iterations <= 60; c.Iterations++ {
 		var okl, okv bool
 		xl, okl = f.Liquid(p, tau, xl)
 		if !okl {
@@ -53,7 +59,7 @@ func (f *Form) saturate(tau float64) coexistence {
 			continue
 		}
 		pv := f.Pressure(xv, tau)
-		if cold && c.iterations == 1 {
+		if cold && c.Iterations == 1 {
 			p = pv
 			continue
 		}
@@ -76,23 +82,17 @@ func (f *Form) saturate(tau float64) coexistence {
 			p = next
 			xl, okl = f.Liquid(p, tau, xl)
 			xv, okv = f.Vapour(p, tau, xv)
-			c.ok = okl && okv && xl < f.XC && xv > f.XC
+			ok = okl && okv && xl < f.XC && xv > f.XC
 			break
 		}
 		p = next
 	}
-	c.p, c.xl, c.xv = p, xl, xv
-	if c.ok {
-		c.gap = f.LnFugacity(xl, tau) - f.LnFugacity(xv, tau)
+	c.P, c.Xl, c.Xv = p, xl, xv
+	if ok {
+		c.Gap = f.LnFugacity(xl, tau) - f.LnFugacity(xv, tau)
+		c.DP = (f.AttractionIntegral(xv) - f.AttractionIntegral(xl)) / (xv - xl)
+		c.DXl = (c.DP + 1/f.q(xl)) / f.PressureSlope(xl, tau)
+		c.DXv = (c.DP + 1/f.q(xv)) / f.PressureSlope(xv, tau)
 	}
-	return c
-}
-
-// slopes returns dp/dτ, dx_l/dτ and dx_v/dτ along coexistence. From equal F and
-// ∂F/∂τ at constant p = −I: dp/dτ = (I_v − I_l)/(x_v − x_l).
-func (f *Form) saturationSlopes(c coexistence, tau float64) (dp, dxl, dxv float64) {
-	dp = (f.AttractionIntegral(c.xv) - f.AttractionIntegral(c.xl)) / (c.xv - c.xl)
-	dxl = (dp + 1/f.q(c.xl)) / f.PressureSlope(c.xl, tau)
-	dxv = (dp + 1/f.q(c.xv)) / f.PressureSlope(c.xv, tau)
-	return dp, dxl, dxv
+	return c, ok
 }
