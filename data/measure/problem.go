@@ -1,0 +1,71 @@
+package measure
+
+import (
+	"fmt"
+	"strings"
+)
+
+// Problem is one place of a file that cannot be used as it stands.
+type Problem struct {
+	File     string
+	Line     int    // 1-based; 0 if the file as a whole is meant
+	Column   int    // 1-based, in bytes from the start of the line; 0 if the row as a whole is meant
+	Where    string // place in a workbook instead of line and column; empty for text files
+	Header   string // the column's header as written; empty if no single column is meant
+	Found    string // what stands there
+	Expected string // what belongs there; may be empty
+	Err      error  // the cause, such as *quantity.Error; may be nil
+}
+
+// Error returns "file:line:column: header: found; expected ...".
+func (p *Problem) Error() string {
+	var b strings.Builder
+	b.WriteString(place(p.File, p.Line, p.Column, p.Where) + ": ")
+	if p.Header != "" {
+		b.WriteString(p.Header + ": ")
+	}
+	b.WriteString(p.Found)
+	if p.Expected != "" {
+		b.WriteString("; expected " + p.Expected)
+	}
+	return b.String()
+}
+
+// Unwrap returns the cause.
+func (p *Problem) Unwrap() error { return p.Err }
+
+// Problems are all the problems of one file, in the order of its lines.
+type Problems []*Problem
+
+// printed is how many problems Problems.Error spells out.
+const printed = 20
+
+// Error returns one line per problem, at most 20, then how many more there are.
+func (ps Problems) Error() string {
+	var lines []string
+	for i, p := range ps {
+		if i == printed {
+			lines = append(lines, fmt.Sprintf("and %d more", len(ps)-printed))
+			break
+		}
+		lines = append(lines, p.Error())
+	}
+	return strings.Join(lines, "\n")
+}
+
+// Unwrap returns the problems one by one, for errors.As.
+func (ps Problems) Unwrap() []error {
+	out := make([]error, len(ps))
+	for i, p := range ps {
+		out[i] = p
+	}
+	return out
+}
+
+// quoted quotes a field for an error text, cut to 40 characters.
+func quoted(s string) string {
+	if r := []rune(s); len(r) > 40 {
+		return fmt.Sprintf("%q...", string(r[:40]))
+	}
+	return fmt.Sprintf("%q", s)
+}
