@@ -1,0 +1,373 @@
+package nucleation
+
+import (
+	"math"
+
+	"limsup/eos"
+)
+
+// This file finds the kinetic limit of superheat, J(T, P_l) = J*. The search is
+// for the zero of
+//
+//	ψ = ΔP/ΔP* − 1,   ΔP* = √(16πσ³/(3kT(lnA − lnJ*))),   lnA = lnJ + W,
+//
+// the pressure excess of the embryo over the one that gives the threshold. Unlike
+// lnJ, which falls to −∞ towards saturation, ψ is nearly a straight line of T (and
+// of P_l), is −1 at saturation, and stays meaningful below it, so Newton's method
+// needs few steps from almost anywhere. A bracket is kept: states without a liquid
+// are too hot, states too dense for any vapour too cold.
+
+// Target is the flux at which the limit is sought.
+type Target struct {
+	// LnJ is ln(J*/(m⁻³s⁻¹)) or, with PerKelvin, ln(J*/(dlnJ/dT)) in
+	// ln(K·m⁻³s⁻¹).
+	LnJ float64
+	// PerKelvin is for a sample of volume V heated at a constant rate β, which
+	// boils with a median at J = ln2·(β/V)·dlnJ/dT.
+	PerKelvin bool
+}
+
+// Threshold is the target J* given as log₁₀(J*/(m⁻³s⁻¹)).
+func Threshold(log10J float64) Target { return Target{LnJ: log10J * math.Ln10} }
+
+// Heated is the target of a sample of volume V in m³ heated at β in K/s: half of
+// such samples have boiled where J = ln2·β·(dlnJ/dT)/V.
+func Heated(V, β float64) Target {
+	return Target{LnJ: math.Log(math.Ln2 * β / V), PerKelvin: true}
+}
+
+// Held is the target of a sample of volume V in m³ that is held at T and P_l for
+// t in s: half of such samples have boiled where J = ln2/(Vt).
+func Held(V, t float64) Target { return Target{LnJ: math.Log(math.Ln2 / (V * t))} }
+
+// Lived is the target of a sample of volume V in m³ with a mean lifetime t in s at
+// T and P_l: J = 1/(Vt).
+func Lived(V, t float64) Target { return Target{LnJ: -math.Log(V * t)} }
+
+// Limit is a kinetic limit.
+type Limit struct {
+	T, P float64 // K, Pa
+	LnJ  float64 // ln(J/(m⁻³s⁻¹)) there
+	// DT and DP are ∂lnJ/∂T in 1/K and ∂lnJ/∂P_l in 1/Pa at the limit.
+	DT, DP float64
+	// Gradient is the change of the limit with the parameters by the implicit
+	// function theorem: K (or Pa for a limit pressure) per unit of each.
+	Gradient Gradient
+	// DThreshold is its change with log₁₀J* (or with log₁₀ of the per-kelvin target).
+	DThreshold float64
+	// DGiven is dT/dP_l along the line of limits in K/Pa (for a limit pressure, dP_l/dT).
+	DGiven      float64
+	Barrier     float64 // W at the limit
+	Evaluations int     // of the flux
+	Held        bool    // see Flux
+}
+
+// maxSteps bounds the search. Newton steps alone end it in 4 to 8; a bracket of
+// bisections down to 1e-12 would take 40 more.
+const maxSteps = 120
+
+// limitTolerance is the relative step at which a limit is taken; the error left
+// is of the order of its square times the curvature of ψ, below 1e-12. The steps for a
+// per-kelvin target shrink by a constant factor of about 100 instead and need
+// their own tolerance.
+const (
+	limitTolerance     = 1e-7
+	perKelvinTolerance = 1e-11
+)
+
+func (t *Target) tolerance() float64 {
+	if t.PerKelvin {
+		return perKelvinTolerance
+	}
+	return limitTolerance
+}
+
+// KineticLimit returns the temperature at which the flux of the liquid at P
+// reaches the target, starting from a guess in K (0 for none).
+//
+// Errors: *NoLimitError when J stays below J* up to the spinodal;
+// *eos.DomainError for P at or above the critical pressure; *ConvergenceError.
+func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) {
+	if math.IsNaN(P) || math.IsInf(P, 0) || (!f.corr && P >= f.c.Model.Pc) {
+		return Limit{}, &eos.DomainError{Fluid: f.name, Equation: f.source(), Quantity: "kinetic limit", Argument: "pressure", Value: P, Lo: math.Inf(-1), Hi: f.c.Model.Pc, Unit: "Pa"}
+	}
+	lo, hi := f.tlo, f.thi
+	T := guess
+	if !(T > lo && T < hi) {
+		T = f.firstGuess(P)
+	}
+	var p point
+	spinodal := false // hi is the spinodal, or a temperature proven above the limit
+	var residual float64
+	for i := 1; i <= maxSteps; i++ {
+		c := f.evaluate(T, P, &p)
+		var next float64
+		switch c {
+		case fine:
+			ψ, slope := f.psi(&p, t, p.total)
+			residual = p.lnJ() - f.wanted(&p, t)
+			if ψ >= 0 {
+				hi, spinodal = T, true
+			} else {
+				lo = T
+			}
+			next = T - ψ/slope
+			if math.Abs(next-T) <= t.tolerance()*T && next > 0 {
+				// one last evaluation brings everything to the limit itself
+				if f.evaluate(next, P, &p) == fine && p.excess > 0 {
+					return f.limitAt(&p, t, i+1, false)
+				}
+			}
+		case noVapour:
+			lo, next = T, math.NaN()
+		case noLiquid, noTension:
+			hi, next = T, math.NaN()
+			p.xl = 0
+		case tolmanTooLarge:
+			// δΔP ≥ σ∞: as hot as a vanishing barrier
+			hi, spinodal, next = T, true, math.NaN()
+		default:
+			if T >= hi || T <= lo { // rounding at the ends of the range
+				return Limit{}, f.noLimit(P, t, T, false)
+			}
+			return Limit{}, f.explain(c, T, P)
+		}
+		if !(next > lo && next < hi) {
+			if !spinodal {
+				// The end of the bracket has not been proven to lie beyond the limit.
+				end, isSpinodal := f.hottest(P)
+				if c := f.evaluate(end, P, &p); c == fine {
+					if ψ, _ := f.psi(&p, t, p.total); ψ < 0 {
+						return Limit{}, f.noLimit(P, t, end, isSpinodal)
+					}
+					hi = math.Min(hi, end)
+				}
+				spinodal = true
+			}
+			next = lo + 0.5*(hi-lo)
+			if hi-next > 0.1*hi {
+				next = hi - 0.1*hi // limits lie near the hot end
+			}
+		}
+		if hi-lo <= 4e-15*hi {
+			return Limit{}, &ConvergenceError{Fluid: f.name, Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
+		}
+		T = next
+	}
+	return Limit{}, &ConvergenceError{Fluid: f.name, Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
+}
+
+// firstGuess is a temperature near which organic liquids reach a threshold of
+// some 10¹² m⁻³s⁻¹: a fixed fraction below the spinodal, closing towards the
+// critical point.
+func (f *Fluid) firstGuess(P float64) float64 {
+	if f.corr {
+		return math.Min(0.9*f.thi, f.tlo+0.9*(f.thi-f.tlo))
+	}
+	m := &f.c.Model
+	t0 := m.ZeroPressureSpinodalTemperature()
+	r := math.Max(P/m.Pc, -1)
+	T := t0 + (m.Tc-t0)*r - 0.02*m.Tc*(1-r)
+	return math.Min(math.Max(T, f.tlo+0.01*(f.thi-f.tlo)), f.tlo+0.999*(f.thi-f.tlo))
+}
+
+// hottest is the last temperature before the spinodal at P, or before the end of
+// the properties if that comes first.
+func (f *Fluid) hottest(P float64) (T float64, spinodal bool) {
+	T = f.thi
+	if !f.corr {
+		if s, err := f.c.Model.LiquidSpinodalTemperature(P); err == nil && s.T < T {
+			T, spinodal = s.T, true
+		}
+	}
+	return T * (1 - 1e-11), spinodal
+}
+
+func (f *Fluid) noLimit(P float64, t Target, end float64, spinodal bool) error {
+	e := &NoLimitError{Fluid: f.name, Given: P, Threshold: t.LnJ / math.Ln10, End: end, Spinodal: spinodal}
+	if x, err := f.Flux(end, P); err == nil {
+		e.Reached, e.Known = x.Log10J(), true
+	}
+	return e
+}
+
+// wanted is the threshold lnJ* at the state p: for a per-kelvin target it moves
+// slowly with T through dlnJ/dT.
+func (f *Fluid) wanted(p *point, t Target) float64 {
+	if !t.PerKelvin {
+		return t.LnJ
+	}
+	s := p.lnJSlope()
+	if !(s > 1e-3) || !(p.excess > 0) {
+		s = 1e-3 // not yet near a limit; any positive slope will do to get there
+	}
+	return t.LnJ + math.Log(s)
+}
+
+// psi is ψ and its derivative along the direction in which total closes the
+// chain rule. The slow drift of a per-kelvin threshold is left out of the slope.
+// A threshold above lnA, which no barrier can meet, gives ψ = −1 and no slope.
+func (f *Fluid) psi(p *point, t Target, total func(*partials) float64) (ψ, slope float64) {
+	L := p.lnA - f.wanted(p, t)
+	if !(L > 0) {
+		return -1, math.NaN()
+	}
+	required := math.Sqrt(16 * math.Pi * p.sigma * p.sigma * p.sigma / (3 * eos.Boltzmann * p.T * L))
+	var d partials
+	h := p.excess / required
+	for k := range d {
+		dlnrequired := 1.5*p.dsigma[k]/p.sigma - 0.5*p.dlnA[k]/L
+		d[k] = p.dpv[k]/required - h*dlnrequired
+	}
+	d[inP] -= 1 / required
+	d[inT] += 0.5 * h / p.T
+	return h - 1, total(&d)
+}
+
+// limitAt assembles the result at a converged state.
+func (f *Fluid) limitAt(p *point, t Target, evaluations int, atT bool) (Limit, error) {
+	x, err := f.fluxAt(p)
+	if err != nil {
+		return Limit{}, err
+	}
+	l := Limit{T: x.T, P: x.P, LnJ: x.LnJ, DT: x.DT, DP: x.DP, Barrier: x.Barrier, Held: x.Held, Evaluations: evaluations}
+	// dR = (∂lnJ − ∂ln s) of the condition lnJ − [ln s] = const.
+	dT, dP, g := x.DT, x.DP, x.Gradient
+	if t.PerKelvin {
+		sT, sP, sg, err := f.slopeGradient(p)
+		if err != nil {
+			return Limit{}, err
+		}
+		dT -= sT
+		dP -= sP
+		for k := range g {
+			g[k] -= sg[k]
+		}
+	}
+	along, given := dT, dP
+	if atT {
+		along, given = dP, dT
+	}
+	for k := range g {
+		l.Gradient[k] = -g[k] / along
+	}
+	l.DThreshold = math.Ln10 / along
+	l.DGiven = -given / along
+	return l, nil
+}
+
+// slopeGradient returns the derivatives of ln(∂lnJ/∂T) with respect to T, P and
+// the parameters, by central differences in T of the analytic first derivatives.
+// A step of 1e-5·T leaves a relative error of (1e-5·T·d/dT)² ~ 1e-7 at worst.
+func (f *Fluid) slopeGradient(p *point) (dT, dP float64, g Gradient, err error) {
+	h := 1e-5 * p.T
+	var up, down point
+	up.xl, up.xv, down.xl, down.xv = p.xl, p.xv, p.xl, p.xv
+	hi, lo := p.T+h, p.T-h
+	if f.evaluate(hi, p.P, &up) != fine {
+		up, hi = *p, p.T // one-sided against the spinodal
+	}
+	if c := f.evaluate(lo, p.P, &down); c != fine {
+		return 0, 0, g, f.explain(c, lo, p.P)
+	}
+	gu, err := f.gradient(&up)
+	if err != nil {
+		return 0, 0, g, err
+	}
+	gd, err := f.gradient(&down)
+	if err != nil {
+		return 0, 0, g, err
+	}
+	scale := 1 / ((hi - lo) * p.lnJSlope())
+	dT = (up.lnJSlope() - down.lnJSlope()) * scale
+	dP = (up.dlnJ(inP) - down.dlnJ(inP)) * scale
+	for k := range g {
+		g[k] = (gu[k] - gd[k]) * scale
+	}
+	return dT, dP, g, nil
+}
+
+// KineticPressure returns the pressure at which the flux of the liquid at T
+// reaches the target on decompression; it may be negative. guess is in Pa, 0 for
+// none.
+//
+// Errors: as KineticLimit.
+func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, error) {
+	if !(T >= f.tlo && T < f.thi) {
+		return Limit{}, f.explain(outsideRange, T, 0)
+	}
+	ps := f.saturation(T)
+	if !(ps > 0) {
+		return Limit{}, f.explain(noSaturation, T, 0)
+	}
+	lo, isSpinodal := math.Inf(-1), false
+	if !f.corr {
+		liquid, _, err := f.c.Model.Spinodal(T)
+		if err != nil {
+			return Limit{}, err
+		}
+		lo, isSpinodal = liquid.P, true
+	}
+	hi := ps
+	var p point
+	along := func(d *partials) float64 { return d[inP] }
+	proven := !isSpinodal
+	P := guess
+	if P == 0 || !(P > lo && P < hi) {
+		P = hi - 0.5*math.Min(hi-lo, 2*hi)
+	}
+	var residual float64
+	for i := 1; i <= maxSteps; i++ {
+		var next float64
+		switch c := f.evaluate(T, P, &p); c {
+		case fine:
+			ψ, slope := f.psi(&p, t, along)
+			residual = p.lnJ() - f.wanted(&p, t)
+			if ψ >= 0 {
+				lo, proven = P, true
+			} else {
+				hi = P
+			}
+			next = P - ψ/slope
+			if math.Abs(next-P) <= t.tolerance()*(math.Abs(P)+p.excess) {
+				if f.evaluate(T, next, &p) == fine && p.excess > 0 {
+					return f.limitAt(&p, t, i+1, true)
+				}
+			}
+		case noLiquid, tolmanTooLarge:
+			lo, next = P, math.NaN()
+			proven = proven || c == tolmanTooLarge
+			p.xl = 0
+		default:
+			return Limit{}, f.explain(c, T, P)
+		}
+		if !(next > lo && next < hi) {
+			if !proven {
+				end := lo + 1e-10*math.Abs(hi-lo)
+				if f.evaluate(T, end, &p) == fine {
+					if ψ, _ := f.psi(&p, t, along); ψ < 0 {
+						e := &NoLimitError{Fluid: f.name, Given: T, AtT: true, Threshold: t.LnJ / math.Ln10, End: lo, Spinodal: true}
+						if p.excess > 0 {
+							e.Reached, e.Known = p.lnJ()/math.Ln10, true
+						}
+						return Limit{}, e
+					}
+				}
+				proven = true
+			}
+			if math.IsInf(lo, -1) {
+				next = P - 2*math.Max(p.excess, ps)
+				if next < -1e12 {
+					return Limit{}, &NoLimitError{Fluid: f.name, Given: T, AtT: true, Threshold: t.LnJ / math.Ln10, End: next}
+				}
+			} else {
+				next = lo + 0.5*(hi-lo)
+			}
+		}
+		if hi-lo <= 4e-15*math.Max(math.Abs(lo), math.Abs(hi)) {
+			return Limit{}, &ConvergenceError{Fluid: f.name, Given: T, AtT: true, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
+		}
+		P = next
+	}
+	return Limit{}, &ConvergenceError{Fluid: f.name, Given: T, AtT: true, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
+}
