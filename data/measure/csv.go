@@ -101,7 +101,7 @@ func (a *assembler) quotes(e *csv.ParseError) {
 	case e.StartLine != e.Line:
 		a.fail(position{line: e.StartLine}, "", fmt.Sprintf("quoted field still open at line %d", e.Line), "a closing quotation mark before the comma or the end of the line", e)
 	default:
-		a.fail(at, "", `quoted field does not end at its quotation mark`, `a comma or the end of the line after the mark, marks inside doubled`, e)
+		a.fail(at, "", `quoted field without a proper end`, `a comma or the end of the line after the mark, marks inside doubled`, e)
 	}
 }
 

@@ -20,7 +20,7 @@ const (
 // judge adds the warnings a row with trimmed fields deserves.
 func (a *assembler) judge(r *Row, fields []string) {
 	warn := func(kind, format string, args ...any) {
-		a.doubts.add(kind, Warning{File: r.File, Line: r.Line, Where: r.Where, Text: r.Fluid + ": " + fmt.Sprintf(format, args...)})
+		a.doubts.add(kind, Warning{File: r.File, Line: r.Line, Where: r.Where, Text: printable(r.Fluid) + ": " + fmt.Sprintf(format, args...)})
 	}
 	a.judgeTemperature(r, warn)
 	if math.Abs(r.Pressure) < gaugeBand {

@@ -3,6 +3,7 @@ package measure
 import (
 	"fmt"
 	"strings"
+	"unicode"
 )
 
 // Problem is one place of a file that cannot be used as it stands.
@@ -22,7 +23,7 @@ func (p *Problem) Error() string {
 	var b strings.Builder
 	b.WriteString(place(p.File, p.Line, p.Column, p.Where) + ": ")
 	if p.Header != "" {
-		b.WriteString(p.Header + ": ")
+		b.WriteString(printable(p.Header) + ": ")
 	}
 	b.WriteString(p.Found)
 	if p.Expected != "" {
@@ -60,6 +61,14 @@ func (ps Problems) Unwrap() []error {
 		out[i] = p
 	}
 	return out
+}
+
+// printable returns s, quoted if it holds characters that could upset a terminal or a line.
+func printable(s string) string {
+	if strings.IndexFunc(s, func(r rune) bool { return !unicode.IsPrint(r) }) >= 0 {
+		return quoted(s)
+	}
+	return s
 }
 
 // quoted quotes a field for an error text, cut to 40 characters.

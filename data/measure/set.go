@@ -32,7 +32,7 @@ type Exclusion struct {
 func (e Exclusion) String() string {
 	s := place(e.File, e.Line, 0, e.Where) + ": "
 	if e.Fluid != "" {
-		s += e.Fluid + ": "
+		s += printable(e.Fluid) + ": "
 	}
 	return s + e.Reason
 }
@@ -79,7 +79,7 @@ func Join(sets ...*Set) (*Set, error) {
 			r := s.Rows[i]
 			if first, repeat := seen[bare(r)]; repeat {
 				doubts.add("repeat", Warning{File: r.File, Line: r.Line, Where: r.Where,
-					Text: fmt.Sprintf("%s: same as %s in every column read; both are kept", r.Fluid, first)})
+					Text: fmt.Sprintf("%s: same as %s in every column read; both are kept", printable(r.Fluid), first)})
 			}
 		}
 		for i := range s.Rows {
