@@ -22,26 +22,35 @@ type Outcome struct {
 	AtEnd      bool // the search was driven against an end of the interval: no sign change inside
 }
 
-// Newton looks for the zero of f between lo and hi, starting at x. f returns
-// the value and the derivative. Rising tells the sign change: a rising f is
-// negative left of the root. The function is never evaluated at lo or hi
-// themselves, which may be poles.
+// Newton looks for the zero of f between lo and hi, both finite, starting at x
+// (or at the mean, if x is not between them). f returns the value and the
+// derivative. Rising tells the sign change: a rising f is negative left of the
+// root. The function is never evaluated at lo or hi themselves, which may be poles.
 //
 // The search stops when a Newton step is below tol·scale(x), scale being the
 // distance to the nearer end or |x|, whichever is smaller: variables that crowd
 // against an end keep their relative accuracy. For a simple root the step after
 // a Newton step of relative size ε is of size ε², so tol = 1e-9 leaves an error
 // of rounding only.
+//
+// An interval that is empty or not finite is refused before the first step, and
+// a value NaN ends the search; neither outcome is Converged or AtEnd.
 func Newton(f func(x float64) (value, slope float64), lo, hi, x float64, rising bool, tol float64) Outcome {
 	first, last := lo, hi
+	width := hi - lo
+	o := Outcome{X: lo, Lo: lo, Hi: hi}
+	if !(width > 0 && width <= math.MaxFloat64) {
+		return o
+	}
 	if !(x > lo && x < hi) {
 		x = middle(lo, hi)
 	}
-	width := hi - lo
-	var o Outcome
 	for o.Iterations = 1; o.Iterations <= maxIterations; o.Iterations++ {
 		v, d := f(x)
 		o.X, o.F = x, v
+		if math.IsNaN(v) {
+			return o
+		}
 		if v == 0 {
 			o.Lo, o.Hi, o.Converged = x, x, true
 			return o
@@ -67,7 +76,7 @@ func Newton(f func(x float64) (value, slope float64), lo, hi, x float64, rising 
 		scale := math.Min(math.Abs(next), math.Min(next-first, last-next))
 		if newton && step <= tol*scale {
 			v, _ = f(next)
-			o.X, o.F, o.Converged = next, v, true
+			o.X, o.F, o.Converged = next, v, !math.IsNaN(v)
 			return o
 		}
 		if next == x || hi-lo <= 4e-16*math.Max(math.Abs(lo), math.Abs(hi)) {
@@ -80,14 +89,5 @@ func Newton(f func(x float64) (value, slope float64), lo, hi, x float64, rising 
 	return o
 }
 
-// middle returns a point between lo and hi: the mean, or a finite stand-in
-// when an end is infinite.
-func middle(lo, hi float64) float64 {
-	switch {
-	case math.IsInf(hi, 1):
-		return lo + math.Max(1, math.Abs(lo))
-	case math.IsInf(lo, -1):
-		return hi - math.Max(1, math.Abs(hi))
-	}
-	return lo + 0.5*(hi-lo)
-}
+// middle returns the mean of lo and hi.
+func middle(lo, hi float64) float64 { return lo + 0.5*(hi-lo) }
