@@ -76,8 +76,9 @@ func (f *Form) PressureSlope(x, tau float64) float64 {
 
 // PressureCurvature is ∂²p/∂x² at constant τ.
 func (f *Form) PressureCurvature(x, tau float64) float64 {
-	q, m, y := f.q(x), 2*x+f.s, x-1
-	return 2/(y*y*y) + tau*(2*q-2*m*m)/(q*q*q)
+	m, y := 2*x+f.s, x-1
+	u, w := x+f.D1, x+f.D2 // quotients first: q³ overflows for a very thin vapour
+	return 2/(y*y*y) + tau*(2-2*(m/u)*(m/w))/(u*w)/(u*w)
 }
 
 // AttractionIntegral is I(x) = ∫dx/q from x to ∞, that is
@@ -105,17 +106,28 @@ func (f *Form) fugacityAndSlope(x, tau float64) (lnf, slope float64) {
 	return lnf, slope
 }
 
+// The reduced pressures and the smallest lnf at which a root is sought. Within
+// x − 1 ≈ 1/p the liquid keeps half the digits of p at maxP; the vapour x ≈ 1/p
+// stays a finite number. The cold liquid x − 1 ≈ q/τ sets maxTau likewise.
+const (
+	minP   = 1e-300
+	maxP   = 1e8
+	minLn  = -690
+	maxTau = 1e8
+)
+
 // rootTolerance is the relative size of the last Newton step at which a root is
 // taken: the error left is of the order of its square, below rounding.
 const rootTolerance = 1e-9
 
 // Liquid returns the liquid root of p(x, τ) = p, 1 < x < spinodal, starting from
 // a guess (0 for none). ok is false when there is none: τ ≤ τ_c, or p at or
-// below the liquid spinodal.
+// below the liquid spinodal; and for p or τ ≥ 1e8, where rounding
+// leaves less than half the digits of x − 1.
 //
 // The root is that of h(x) = 1 − (x−1)(p + τ/q), which has no pole at x = 1.
 func (f *Form) Liquid(p, tau, guess float64) (x float64, ok bool) {
-	if !(tau > f.TauC) {
+	if !(tau > f.TauC && tau < maxTau && p < maxP) {
 		return 0, false
 	}
 	x = guess
@@ -169,13 +181,14 @@ func (f *Form) liquidBracketed(p, tau float64) (float64, bool) {
 
 // Vapour returns the vapour root of p(x, τ) = p, spinodal < x < ∞, starting
 // from a guess (0 for none). For τ ≤ τ_c it is the only root. ok is false
-// when p ≤ 0 or when p is at or above the vapour spinodal.
+// when p is not positive or when it is at or above the vapour spinodal; and
+// outside 1e-300 < p < 1e8, 0 ≤ τ < 1e8.
 //
 // The search is in the reduced density y = 1/x, where p(y) rises from the ideal
 // gas line, concave up to the spinodal, so that Newton steps from p approach
 // from one side.
 func (f *Form) Vapour(p, tau, guess float64) (x float64, ok bool) {
-	if !(p > 0) {
+	if !(p > minP && p < maxP && tau >= 0 && tau < maxTau) {
 		return 0, false
 	}
 	y := p
@@ -235,11 +248,15 @@ func (f *Form) vapourBracketed(p, tau float64) (float64, bool) {
 // VapourOfFugacity returns the vapour root of F(x, τ) = lnf, that is the vapour
 // in chemical equilibrium with a phase of that fugacity, starting from a guess
 // (0 for none). ok is false when lnf is at or above its value at the vapour
-// spinodal: no vapour, not even a metastable one, is in equilibrium with it.
+// spinodal: no vapour, not even a metastable one, is in equilibrium with it;
+// and outside ±690, where x or 1/(x−1) leaves the range of numbers.
 //
 // In u = ln x, F falls with a slope between −1 (thin vapour) and 0 (spinodal),
 // so that Newton steps from the thin side approach from one side.
 func (f *Form) VapourOfFugacity(lnf, tau, guess float64) (x float64, ok bool) {
+	if !(lnf > minLn && lnf < -minLn && tau >= 0 && tau < maxTau) {
+		return 0, false
+	}
 	x = guess
 	if !(x > f.XC) {
 		y := math.Exp(lnf) // ideal vapour; then one step of its second virial coefficient 1−τ
@@ -290,11 +307,11 @@ func (f *Form) vapourOfFugacityBracketed(lnf, tau float64) (float64, bool) {
 
 // LiquidOfFugacity returns the liquid root of F(x, τ) = lnf: the liquid in
 // chemical equilibrium with a phase of that fugacity. ok is false when lnf is
-// at or below its value at the liquid spinodal.
+// at or below its value at the liquid spinodal, or not below 1e8 (see Liquid).
 //
 // The search is in w = ln(x−1), in which a compressed liquid (x → 1) is smooth.
 func (f *Form) LiquidOfFugacity(lnf, tau float64) (x float64, ok bool) {
-	if !(tau > f.TauC) {
+	if !(tau > f.TauC && tau < maxTau && lnf < maxP) {
 		return 0, false
 	}
 	xs := f.SpinodalLiquid(tau)

@@ -20,8 +20,9 @@ type Coexistence struct {
 	Iterations   int
 }
 
-// Saturate returns the coexistence at τ; ok is false for τ ≤ τ_c, or when the
-// search does not end.
+// Saturate returns the coexistence at τ; ok is false for τ ≤ τ_c, for a liquid so
+// cold that its vapour pressure leaves the range of numbers, or when the search
+// does not end.
 //
 // The slopes follow from equal F and ∂F/∂τ = −I at constant p:
 // dp/dτ = (I_v − I_l)/(x_v − x_l).
