@@ -15,7 +15,7 @@ type Saturation struct {
 	Iterations int
 }
 
-// Saturation returns the coexistence state at T, MinTr·Tc ≤ T < Tc: the pressure
+// Saturation returns the coexistence state at T, MinT ≤ T < Tc: the pressure
 // of equal fugacity. Since (F_l − F_v) changes by (x_l − x_v)dp, an error left in
 // F costs 1/(Z_v − Z_l) as much in ln P, so that accuracy falls off towards the
 // critical point as it does in nature.
@@ -41,11 +41,11 @@ func (m *Model) Saturation(T float64) (Saturation, error) {
 }
 
 // SaturationTemperature returns the coexistence state at pressure P, by Newton
-// steps of ln P against 1/T (nearly a straight line) inside [MinTr·Tc, Tc].
+// steps of ln P against 1/T (nearly a straight line) inside [MinT, Tc].
 //
 // Errors: *DomainError for P outside the saturation line, *ConvergenceError.
 func (m *Model) SaturationTemperature(P float64) (Saturation, error) {
-	lowest, err := m.Saturation(MinTr * m.Tc)
+	lowest, err := m.Saturation(m.MinT)
 	if err != nil {
 		return Saturation{}, err
 	}
@@ -53,7 +53,7 @@ func (m *Model) SaturationTemperature(P float64) (Saturation, error) {
 		return Saturation{}, &DomainError{m.Fluid, m.Equation, "saturation temperature", "pressure", P, lowest.P, m.Pc, "Pa"}
 	}
 	// lg(P/Pc) ≈ (7/3)(1+ω)(1−Tc/T); the factor is estimated from the lowest state.
-	slope := math.Log(m.Pc/lowest.P) / (1/MinTr - 1)
+	slope := math.Log(m.Pc/lowest.P) / (m.Tc/m.MinT - 1)
 	start := (1 + math.Log(m.Pc/P)/slope) / m.Tc
 	var s Saturation
 	o := bracketNewton(func(inverse float64) (float64, float64) {
@@ -63,7 +63,7 @@ func (m *Model) SaturationTemperature(P float64) (Saturation, error) {
 			return math.Log(m.Pc / P), -slope * m.Tc
 		}
 		return math.Log(s.P / P), -s.DPDT / s.P * T * T
-	}, 1/m.Tc, 1/(MinTr*m.Tc), start, false)
+	}, 1/m.Tc, 1/m.MinT, start, false)
 	if err != nil || !(o.Converged || o.AtEnd) {
 		return Saturation{}, &ConvergenceError{m.Fluid, m.Equation, "saturation temperature", P, "Pa", 1 / o.Hi, 1 / o.Lo, o.F, o.Iterations}
 	}
@@ -80,7 +80,7 @@ func (m *Model) spinodal(T, tau, x float64) SpinodalState {
 	return SpinodalState{T: T, P: m.Form.Pressure(x, tau) * GasConstant * T / m.B, V: x * m.B}
 }
 
-// Spinodal returns both branches at T, MinTr·Tc ≤ T < Tc: the limit of the
+// Spinodal returns both branches at T, MinT ≤ T < Tc: the limit of the
 // superheated (or stretched) liquid and that of the supersaturated vapour.
 //
 // Errors: *DomainError.
@@ -99,11 +99,11 @@ func (m *Model) Spinodal(T float64) (liquid, vapour SpinodalState, err error) {
 // in x for P(x) = P, with dP/dx = (∂P/∂T)_v·dT/dx.
 //
 // Errors: *DomainError for P at or above Pc or below the tension that the liquid
-// holds at MinTr·Tc; *ConvergenceError.
+// holds at MinT; *ConvergenceError.
 func (m *Model) LiquidSpinodalTemperature(P float64) (SpinodalState, error) {
-	tauMax, _ := m.Tau(MinTr * m.Tc)
+	tauMax, _ := m.Tau(m.MinT)
 	xmin := m.SpinodalLiquid(tauMax)
-	pmin := m.spinodal(MinTr*m.Tc, tauMax, xmin).P
+	pmin := m.spinodal(m.MinT, tauMax, xmin).P
 	if !(P > pmin && P < m.Pc) {
 		return SpinodalState{}, &DomainError{m.Fluid, m.Equation, "liquid spinodal temperature", "pressure", P, pmin, m.Pc, "Pa"}
 	}
@@ -117,9 +117,9 @@ func (m *Model) LiquidSpinodalTemperature(P float64) (SpinodalState, error) {
 //
 // Errors: as LiquidSpinodalTemperature.
 func (m *Model) VapourSpinodalTemperature(P float64) (SpinodalState, error) {
-	tauMax, _ := m.Tau(MinTr * m.Tc)
+	tauMax, _ := m.Tau(m.MinT)
 	xmax := m.SpinodalVapour(tauMax)
-	pmin := m.spinodal(MinTr*m.Tc, tauMax, xmax).P
+	pmin := m.spinodal(m.MinT, tauMax, xmax).P
 	if !(P > pmin && P < m.Pc) {
 		return SpinodalState{}, &DomainError{m.Fluid, m.Equation, "vapour spinodal temperature", "pressure", P, pmin, m.Pc, "Pa"}
 	}

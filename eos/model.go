@@ -11,12 +11,16 @@ type Model struct {
 	// Tc and Pc are the critical point that the model itself implies; they equal
 	// the fluid's constants for an untuned equation.
 	Tc, Pc float64
+	// MinT is the lowest temperature at which two phases are sought: MinTr·Tc, or
+	// higher where the saturation pressure would leave the range of numbers.
+	MinT float64
 	// B is the covolume b in m³/mol.
 	B float64
 
 	tuning  Tuning
 	inputTc float64 // the fluid's constant, the reference of Tr in α
 	tau1    float64 // τ at T = inputTc
+	maxT    float64 // above it α is not used
 	power   bool    // α = Tr^(−n), else Soave's form
 	c       float64 // n or m
 	dcds    float64 // ∂c/∂slope
@@ -70,14 +74,21 @@ func NewModel(e Equation, s Substance, t Tuning) (Model, error) {
 	default:
 		return Model{}, &ParameterError{s.Name, e.Name, "alpha form " + string(e.Alpha), 0, "power or soave"}
 	}
-	// a/T must fall with T: n > −1, or 1 + m > 0 and not beyond the zero of 1 + m(1−√Tr).
-	if !(m.c > -1+1e-6) {
-		return bad("slope", t.Slope, "a temperature dependence with a/T falling, exponent or m > -1")
+	// a/T must fall with T: n > −1 or 1 + m > 0. For m < 0 it then falls to m²τ₁ only.
+	if !(m.c > -1+1e-6) || !(m.power || m.c+math.Sqrt(form.TauC/m.tau1) > 0) {
+		return bad("slope", t.Slope, "a temperature dependence with a/T falling through its critical value, exponent or m > -1")
 	}
 	m.Tc = m.temperature(form.TauC)
 	m.Pc = form.PC * GasConstant * m.Tc / m.B
 	if !(m.Tc > 0 && m.Tc < 1e6 && m.Pc > 0) {
 		return bad("implied critical temperature in K", m.Tc, "> 0 and finite")
+	}
+	// A liquid at zero pressure has F > −1 − τI(1); see minLn.
+	m.MinT = math.Max(MinTr*m.Tc, m.temperature(-(minLn+10)/form.AttractionIntegral(1)))
+	m.maxT = maxTr * m.Tc
+	if !m.power && m.c > 0 { // zero of 1 + m(1−√Tr), beyond which α would rise again
+		r := 1 + 1/m.c
+		m.maxT = math.Min(m.maxT, r*r*m.inputTc)
 	}
 	return m, nil
 }
@@ -200,13 +211,18 @@ func (m *Model) chemicalPotential(s Saturation, v float64) (float64, error) {
 // Liquid is the molar volume in m³/mol of the liquid at (T, P), stable or
 // superheated, also under tension (P < 0).
 //
-// Errors: *DomainError for T ≥ Tc; *PhaseError beyond the liquid spinodal.
+// Errors: *DomainError for T outside [MinT, Tc) or P ≥ 1e8·RT/b; *PhaseError
+// beyond the liquid spinodal.
 func (m *Model) Liquid(T, P float64) (float64, error) {
 	if err := m.checkSubcritical("liquid volume", T); err != nil {
 		return 0, err
 	}
+	k := GasConstant * T / m.B
+	if !(P >= -math.MaxFloat64 && P < maxP*k) {
+		return 0, &DomainError{m.Fluid, m.Equation, "liquid volume", "pressure", P, math.Inf(-1), maxP * k, "Pa"}
+	}
 	tau, _ := m.Tau(T)
-	x, ok := m.Form.Liquid(P*m.B/(GasConstant*T), tau, 0)
+	x, ok := m.Form.Liquid(P/k, tau, 0)
 	if !ok {
 		return 0, &PhaseError{m.Fluid, m.Equation, "liquid", T, P, m.spinodal(T, tau, m.SpinodalLiquid(tau)).P}
 	}
@@ -216,28 +232,38 @@ func (m *Model) Liquid(T, P float64) (float64, error) {
 // Vapour is the molar volume in m³/mol of the vapour at (T, P), stable or
 // supersaturated.
 //
-// Errors: *DomainError for T ≥ Tc or P ≤ 0; *PhaseError beyond the vapour spinodal.
+// Errors: *DomainError for T outside [MinT, Tc) or P ≤ 1e-300·RT/b; *PhaseError
+// beyond the vapour spinodal.
 func (m *Model) Vapour(T, P float64) (float64, error) {
 	if err := m.checkSubcritical("vapour volume", T); err != nil {
 		return 0, err
 	}
-	if !(P > 0) {
-		return 0, &DomainError{m.Fluid, m.Equation, "vapour volume", "pressure", P, 0, math.Inf(1), "Pa"}
+	k := GasConstant * T / m.B
+	if !(P > minP*k && P <= math.MaxFloat64) {
+		return 0, &DomainError{m.Fluid, m.Equation, "vapour volume", "pressure", P, minP * k, math.Inf(1), "Pa"}
 	}
 	tau, _ := m.Tau(T)
-	x, ok := m.Form.Vapour(P*m.B/(GasConstant*T), tau, 0)
+	x, ok := m.Form.Vapour(P/k, tau, 0)
 	if !ok {
 		return 0, &PhaseError{m.Fluid, m.Equation, "vapour", T, P, m.spinodal(T, tau, m.SpinodalVapour(tau)).P}
 	}
 	return x * m.B, nil
 }
 
+// The range of temperature (of the model's own Tc) and of x = v/b in which P and
+// its derivatives are finite numbers for every permitted slope.
+const (
+	coldestTr = 0.01
+	maxTr     = 1e4
+	maxX      = 1e300
+)
+
 func (m *Model) checkTV(quantity string, T, v float64) error {
-	if !(T > 0 && T <= math.MaxFloat64) {
-		return &DomainError{m.Fluid, m.Equation, quantity, "temperature", T, 0, math.Inf(1), "K"}
+	if !(T > coldestTr*m.Tc && T < m.maxT) {
+		return &DomainError{m.Fluid, m.Equation, quantity, "temperature", T, coldestTr * m.Tc, m.maxT, "K"}
 	}
-	if !(v > m.B && v <= math.MaxFloat64) {
-		return &DomainError{m.Fluid, m.Equation, quantity, "molar volume", v, m.B, math.Inf(1), "m3/mol"}
+	if !(v > m.B && v < maxX*m.B) {
+		return &DomainError{m.Fluid, m.Equation, quantity, "molar volume", v, m.B, maxX * m.B, "m3/mol"}
 	}
 	return nil
 }
@@ -247,8 +273,8 @@ func (m *Model) checkTV(quantity string, T, v float64) error {
 const MinTr = 0.15
 
 func (m *Model) checkSubcritical(quantity string, T float64) error {
-	if !(T >= MinTr*m.Tc && T < m.Tc) {
-		return &DomainError{m.Fluid, m.Equation, quantity, "temperature", T, MinTr * m.Tc, m.Tc, "K"}
+	if !(T >= m.MinT && T < m.Tc) {
+		return &DomainError{m.Fluid, m.Equation, quantity, "temperature", T, m.MinT, m.Tc, "K"}
 	}
 	return nil
 }
