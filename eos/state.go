@@ -34,10 +34,13 @@ type Isotherm struct {
 // Errors: those of Saturation, except that T ≥ Tc is none.
 func (m *Model) Isotherm(T float64) (Isotherm, error) {
 	iso := Isotherm{T: T, m: m}
-	if T >= m.Tc {
-		return iso, m.checkTV("isotherm", T, 2*m.B)
-	}
 	var err error
+	if T >= m.Tc {
+		if err = m.checkTV("isotherm", T, 2*m.B); err != nil {
+			return Isotherm{}, err
+		}
+		return iso, nil
+	}
 	if iso.Saturation, err = m.Saturation(T); err != nil {
 		return Isotherm{}, err
 	}
@@ -48,9 +51,12 @@ func (m *Model) Isotherm(T float64) (Isotherm, error) {
 	return iso, nil
 }
 
-// State classifies the molar volume v in m³/mol, v > b.
+// State classifies the molar volume v in m³/mol, v > b; for any other v there is
+// no state and the answer is empty.
 func (iso *Isotherm) State(v float64) State {
 	switch s := &iso.Saturation; {
+	case !(v > iso.m.B):
+		return ""
 	case !iso.Subcritical:
 		return Supercritical
 	case v < s.Vl:
