@@ -66,17 +66,22 @@ func (l *layout) draw(out *bytes.Buffer, columns []Column, colour bool) error {
 			return fmt.Errorf("table drawing: %w", err)
 		}
 	}
+	if len(l.rows) == 0 { // tablewriter draws no rule without a row: give it a blank one, removed below
+		if err := grid.Append(make([]string, len(l.header))); err != nil {
+			return fmt.Errorf("table drawing: %w", err)
+		}
+	}
 	if err := grid.Render(); err != nil {
 		return fmt.Errorf("table drawing: %w", err)
 	}
-	n := 0
-	for line := range strings.Lines(stand.out(drawn.String())) {
-		line = strings.TrimRight(line, " \n")
-		if colour && n < headerLines {
+	for n, line := range strings.Split(strings.TrimSuffix(stand.out(drawn.String()), "\n"), "\n") {
+		line = strings.TrimRight(line, " ")
+		if n < headerLines && colour {
 			line = bold + line + plain
 		}
-		out.WriteString(line + "\n")
-		n++
+		if len(l.rows) > 0 || n <= headerLines {
+			out.WriteString(line + "\n")
+		}
 	}
 	return nil
 }
@@ -144,12 +149,3 @@ func (s *standIns) standIn(r rune, width int) string {
 
 // out puts the clusters back.
 func (s *standIns) out(text string) string { return strings.NewReplacer(s.replacer...).Replace(text) }
-
-func isASCII(s string) bool {
-	for i := range len(s) {
-		if s[i] >= 0x80 {
-			return false
-		}
-	}
-	return true
-}

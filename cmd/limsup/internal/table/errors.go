@@ -24,7 +24,7 @@ type KindError struct {
 }
 
 func (e *KindError) Error() string {
-	return fmt.Sprintf("table row %d, column %q: a %s cell in a %s column", e.Row+1, e.Column, e.Got, e.Want)
+	return fmt.Sprintf("table row %d, column %q: %s cell in %s column", e.Row+1, e.Column, e.Got, e.Want)
 }
 
 // ShapeError reports a row whose number of cells differs from the number of columns. Row counts from 0.

@@ -20,7 +20,7 @@ func (f Facts) Render(w io.Writer, width int) error {
 	labels := make([]string, len(f))
 	widest := 0
 	for i, fact := range f {
-		labels[i] = visible(fact.Label, "")
+		labels[i] = grounded(visible(fact.Label, ""))
 		widest = max(widest, displayWidth(labels[i]))
 	}
 	if width > 0 {
@@ -59,7 +59,7 @@ func (f Facts) Render(w io.Writer, width int) error {
 func Paragraph(w io.Writer, text string, width int) error {
 	var out bytes.Buffer
 	for line := range strings.SplitSeq(text, "\n") {
-		if err := paragraph(&out, line, "", width); err != nil {
+		if err := paragraph(&out, "", line, width); err != nil {
 			return err
 		}
 	}
@@ -67,16 +67,18 @@ func Paragraph(w io.Writer, text string, width int) error {
 	return err
 }
 
-// paragraph wraps one line of text; lines after the first start with hang.
-func paragraph(w io.Writer, text, hang string, width int) error {
+// paragraph wraps one line of text after a mark; further lines are indented by as much as the mark is wide.
+func paragraph(w io.Writer, mark, text string, width int) error {
 	lines := []string{visible(text, "")}
 	if width > 0 {
-		lines = wrap(lines[0], max(width, leastWidth)-len(hang), false)
+		lines = wrap(lines[0], max(width, leastWidth)-len(mark), false)
 	}
 	var b strings.Builder
 	for n, line := range lines {
-		if n > 0 {
-			b.WriteString(hang)
+		if n == 0 {
+			b.WriteString(mark)
+		} else {
+			b.WriteString(strings.Repeat(" ", len(mark)))
 		}
 		b.WriteString(strings.TrimRight(line, " ") + "\n")
 	}

@@ -32,7 +32,14 @@ func (l *layout) width() int {
 	return total
 }
 
-// screen finds the gentlest layout that fits and draws it. In this order: everything on one line; headers and text
+// squeeze says how far a layout may go to fit.
+type squeeze struct {
+	text        int  // floor for the width of text columns; 0: each column's own Wrap, or 24
+	wrapHeaders bool // set headers on several lines
+	shorten     bool // cut text instead of wrapping it
+}
+
+// screen finds the gentlest layout that fits and draws it. In this order: everything on one line; text wrapped; headers
 // wrapped; columns left out by Priority; text wrapped more tightly; text shortened. What was left out or shortened is
 // said below the table. Numbers are never shortened: if they alone are too wide, the table is, and says so.
 func (t *Table) screen(out *bytes.Buffer, opts Options) error {
@@ -41,7 +48,7 @@ func (t *Table) screen(out *bytes.Buffer, opts Options) error {
 		shown[j] = j
 	}
 	var left []string
-	l := t.fit(shown, opts.Width, defaultWrap, false)
+	l := t.fit(shown, opts.Width, squeeze{}, squeeze{wrapHeaders: true})
 	for l == nil {
 		drop := t.nextToDrop(shown)
 		if drop < 0 {
@@ -49,26 +56,23 @@ func (t *Table) screen(out *bytes.Buffer, opts Options) error {
 		}
 		left = append(left, t.Columns[shown[drop]].label())
 		shown = append(shown[:drop:drop], shown[drop+1:]...)
-		l = t.fit(shown, opts.Width, defaultWrap, false)
+		l = t.fit(shown, opts.Width, squeeze{wrapHeaders: true})
 	}
+	tight := squeeze{text: narrowWrap, wrapHeaders: true}
 	if l == nil {
-		l = t.fit(shown, opts.Width, narrowWrap, false)
-	}
-	if l == nil {
-		l = t.fit(shown, opts.Width, narrowest, true)
+		l = t.fit(shown, opts.Width, tight, squeeze{text: narrowest, wrapHeaders: true, shorten: true})
 	}
 	tooWide := 0
 	if l == nil {
-		l = t.narrow(shown, 0, narrowest, true)
+		l = t.narrow(shown, 0, tight)
 		tooWide = l.width()
 	}
 
-	lines := func(text, hang string) error { return paragraph(out, text, hang, opts.Width) }
 	for _, text := range []string{t.Title, t.Caption} {
 		if text == "" {
 			continue
 		}
-		if err := lines(text, ""); err != nil {
+		if err := paragraph(out, "", text, opts.Width); err != nil {
 			return err
 		}
 	}
@@ -81,31 +85,29 @@ func (t *Table) screen(out *bytes.Buffer, opts Options) error {
 	if len(t.Rows) == 0 {
 		out.WriteString("(no rows)\n")
 	}
-	var below [][2]string
+	const remedy = "; use --format csv or a wider terminal"
+	var below [][2]string // mark, text
 	for _, text := range l.marks.texts {
-		mark := l.marks.letters[text] + " "
-		below = append(below, [2]string{mark + text, strings.Repeat(" ", len(mark))})
+		below = append(below, [2]string{l.marks.letters[text] + " ", text})
 	}
 	for _, text := range t.Notes {
-		below = append(below, [2]string{text, ""})
+		below = append(below, [2]string{"", text})
 	}
 	if len(left) > 0 {
-		below = append(below, [2]string{"columns left out at this width: " + strings.Join(left, ", ") +
-			"; use --format csv or a wider terminal", ""})
+		below = append(below, [2]string{"", "columns left out at this width: " + strings.Join(left, ", ") + remedy})
 	}
 	if len(l.short) > 0 {
-		below = append(below, [2]string{"text shortened at this width in: " + strings.Join(l.short, ", ") +
-			"; use --format csv or a wider terminal", ""})
+		below = append(below, [2]string{"", "text shortened at this width in: " + strings.Join(l.short, ", ") + remedy})
 	}
 	if tooWide > 0 {
-		below = append(below, [2]string{"the table needs a width of " + strconv.Itoa(tooWide) + ", available are " +
-			strconv.Itoa(opts.Width) + "; use --format csv or a wider terminal", ""})
+		below = append(below, [2]string{"", "the table needs a width of " + strconv.Itoa(tooWide) + ", available are " +
+			strconv.Itoa(opts.Width) + remedy})
 	}
 	if len(below) > 0 {
 		out.WriteString("\n")
 	}
 	for _, b := range below {
-		if err := lines(b[0], b[1]); err != nil {
+		if err := paragraph(out, b[0], b[1], opts.Width); err != nil {
 			return err
 		}
 	}
@@ -113,7 +115,7 @@ func (t *Table) screen(out *bytes.Buffer, opts Options) error {
 }
 
 // label names a column in a sentence.
-func (c Column) label() string { return visible(c.header(), "") }
+func (c Column) label() string { return grounded(visible(c.header(), "")) }
 
 // nextToDrop returns the position in shown of the column to leave out next, or -1.
 func (t *Table) nextToDrop(shown []int) int {
@@ -129,113 +131,121 @@ func (t *Table) nextToDrop(shown []int) int {
 	return at
 }
 
-// fit lays the shown columns out within width, or returns nil. No text column goes below the floor (or its own
-// Wrap, while nothing is being squeezed).
-func (t *Table) fit(shown []int, width, floor int, shortened bool) *layout {
-	if l := t.arrange(shown, nil, false); width <= 0 || l.width() <= width {
+// fit lays the shown columns out within width: unwrapped if it can, else by the first of the given ways that
+// does. It returns nil if none does.
+func (t *Table) fit(shown []int, width int, ways ...squeeze) *layout {
+	if l := t.arrange(shown, make([]int, len(shown)), squeeze{}); width <= 0 || l.width() <= width {
 		return l
 	}
-	if l := t.narrow(shown, width, floor, shortened); l.width() <= width {
-		return l
+	for _, way := range ways {
+		if l := t.narrow(shown, width, way); l.width() <= width {
+			return l
+		}
 	}
 	return nil
 }
 
-// narrow wraps headers, then takes width from the widest text column, one display column at a time, until the table
-// fits or every text column is at its floor.
-func (t *Table) narrow(shown []int, width, floor int, shortened bool) *layout {
+// narrow takes width from the widest text column, one display column at a time, until the table fits or every text
+// column is at its floor.
+func (t *Table) narrow(shown []int, width int, way squeeze) *layout {
 	limits := make([]int, len(shown))
-	l := t.arrange(shown, limits, shortened)
-	widths := append([]int(nil), l.widths...)
+	l := t.arrange(shown, limits, way)
 	total := l.width()
+	floors := make([]int, len(shown))
+	for k, j := range shown {
+		floors[k] = t.Columns[j].floor(way)
+	}
 	for total > width {
 		widest := -1
-		for i, j := range shown {
-			least := floor
-			if w := t.Columns[j].Wrap; floor == defaultWrap && w > 0 {
-				least = w
-			}
-			if t.Columns[j].Kind == KindText && widths[i] > max(least, l.headerFloor(i, t, shortened)) &&
-				(widest < 0 || widths[i] > widths[widest]) {
-				widest = i
+		for k, j := range shown {
+			if t.Columns[j].Kind == KindText && l.widths[k] > floors[k] && (widest < 0 || l.widths[k] > l.widths[widest]) {
+				widest = k
 			}
 		}
 		if widest < 0 {
 			break
 		}
-		widths[widest]--
-		limits[widest] = widths[widest]
+		l.widths[widest]--
+		limits[widest] = l.widths[widest]
 		total--
 	}
-	return t.arrange(shown, limits, shortened)
+	return t.arrange(shown, limits, way)
 }
 
-// headerFloor is the width a header needs when wrapped between words; a column being shortened cuts it as well.
-func (l *layout) headerFloor(i int, t *Table, shortened bool) int {
-	if shortened {
-		return narrowest
+// floor is the least width of a text column; its header needs some too, unless that may be shortened.
+func (c Column) floor(way squeeze) int {
+	least := way.text
+	if least == 0 {
+		least = defaultWrap
+		if c.Wrap > 0 {
+			least = c.Wrap
+		}
 	}
-	return longestWord(t.Columns[l.columns[i]].label())
+	switch {
+	case way.shorten:
+		return least
+	case way.wrapHeaders:
+		return max(least, longestWord(c.label()))
+	}
+	return max(least, displayWidth(c.label()))
 }
 
-// arrange sets the shown columns. With limits, headers are wrapped to the width of their column and text columns
-// with a limit above zero are wrapped (or shortened) to it; without, nothing is wrapped.
-func (t *Table) arrange(shown []int, limits []int, shortened bool) *layout {
+// arrange sets the shown columns; text in a column with a limit above zero is wrapped or shortened to it.
+func (t *Table) arrange(shown, limits []int, way squeeze) *layout {
 	l := &layout{columns: shown, widths: make([]int, len(shown)), rows: make([][][]string, len(t.Rows))}
-	marked := make([][]string, len(t.Rows))
+	tails := make([][]string, len(shown)) // the marks of each cell, by column
+	for k := range shown {
+		tails[k] = make([]string, len(t.Rows))
+	}
 	for i, row := range t.Rows { // in reading order, so that the letters are
-		marked[i] = make([]string, len(shown))
 		l.rows[i] = make([][]string, len(shown))
 		for k, j := range shown {
-			marked[i][k] = l.marks.of(row[j])
+			tails[k][i] = l.marks.of(row[j])
 		}
 	}
 	for k, j := range shown {
-		col, limit, cut := t.Columns[j], 0, false
-		if limits != nil {
-			limit = limits[k]
-		}
+		col, limit, cut := t.Columns[j], limits[k], false
 		column := make([]Cell, len(t.Rows))
-		tails := make([]string, len(t.Rows))
 		for i, row := range t.Rows {
-			column[i], tails[i] = row[j], marked[i][k]
+			column[i] = row[j]
 		}
-		for i, text := range screenCells(col, column, tails) {
+		for i, text := range screenCells(col, column, tails[k]) {
 			lines := []string{text}
 			switch {
-			case limit > 0 && shortened && displayWidth(text) > limit:
-				body := strings.TrimSuffix(text, tails[i])
-				lines[0] = shorten(body, limit-displayWidth(tails[i])) + tails[i]
+			case limit > 0 && way.shorten && displayWidth(text) > limit:
+				tail := tails[k][i]
+				lines[0] = shorten(strings.TrimSuffix(text, tail), limit-displayWidth(tail)) + tail
 				cut = true
 			case limit > 0:
 				lines = wrap(text, limit, true)
 			}
-			for n, line := range lines {
-				l.widths[k] = max(l.widths[k], displayWidth(line))
-				lines[n] = isolate(line)
-			}
-			l.rows[i][k] = lines
+			l.rows[i][k] = l.set(k, lines)
 		}
 		header := []string{col.label()}
-		if limits != nil {
+		if way.wrapHeaders {
 			header = wrap(header[0], max(l.widths[k], longestWord(header[0])), false)
-			if shortened && limit > 0 {
-				for n, line := range header {
-					cut = cut || displayWidth(line) > max(limit, l.widths[k])
-					header[n] = shorten(line, max(limit, l.widths[k]))
-				}
+		}
+		if room := max(limit, l.widths[k]); way.shorten && limit > 0 {
+			for n, line := range header {
+				cut = cut || displayWidth(line) > room
+				header[n] = shorten(line, room)
 			}
 		}
-		for n, line := range header {
-			l.widths[k] = max(l.widths[k], displayWidth(line))
-			header[n] = isolate(line)
-		}
-		l.header = append(l.header, header)
+		l.header = append(l.header, l.set(k, header))
 		if cut {
 			l.short = append(l.short, col.label())
 		}
 	}
 	return l
+}
+
+// set makes room for lines in column k and closes those that run from right to left.
+func (l *layout) set(k int, lines []string) []string {
+	for n, line := range lines {
+		l.widths[k] = max(l.widths[k], displayWidth(line))
+		lines[n] = isolate(line)
+	}
+	return lines
 }
 
 // screenCells prints the cells of one column with their marks; numbers are padded so that decimal signs line up.
@@ -245,7 +255,7 @@ func screenCells(col Column, column []Cell, tails []string) []string {
 		for i, c := range column {
 			switch c.kind {
 			case cellText:
-				out[i] = isolate(visible(c.text, "")) + tails[i]
+				out[i] = isolate(grounded(visible(c.text, ""))) + tails[i]
 			case cellBool:
 				out[i] = yesNo(c.yes) + tails[i]
 			default:

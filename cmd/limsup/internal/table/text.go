@@ -14,6 +14,7 @@ import (
 const (
 	ellipsis        = "…"
 	leftToRightMark = "\u200e"
+	dottedCircle    = "\u25cc"
 )
 
 // clusters counts display columns per grapheme cluster, independent of locale and environment.
@@ -69,6 +70,33 @@ func isolate(s string) string {
 		return s + leftToRightMark
 	}
 	return s
+}
+
+// grounded puts a dotted circle under marks that would otherwise combine with the blank before a cell or a word,
+// where they would take no column of their own.
+func grounded(s string) string {
+	if isASCII(s) {
+		return s
+	}
+	var b strings.Builder
+	for g := graphemes.FromString(" " + s); g.Next(); {
+		r, n := utf8.DecodeRuneInString(g.Value())
+		b.WriteRune(r)
+		if breakable(r) && n < len(g.Value()) {
+			b.WriteString(dottedCircle)
+		}
+		b.WriteString(g.Value()[n:])
+	}
+	return b.String()[1:]
+}
+
+func isASCII(s string) bool {
+	for i := range len(s) {
+		if s[i] >= 0x80 {
+			return false
+		}
+	}
+	return true
 }
 
 // breakable says whether a line may end at r.
