@@ -137,7 +137,8 @@ func (a *assembler) close(sum string) (*Set, error) {
 		return nil, a.ps
 	}
 	a.info.SHA256, a.info.Rows = sum, len(a.set.Rows)
-	a.set.Files = []FileInfo{a.info}
-	a.set.Warnings = a.doubts.list
-	return &a.set, nil
+	set := a.set // a copy lets go of the digests
+	set.Files = []FileInfo{a.info}
+	set.Warnings = a.doubts.list
+	return &set, nil
 }

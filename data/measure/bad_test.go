@@ -101,6 +101,11 @@ d.csv:3:17: NUL byte at byte 72 of the file; expected text (is the file in UTF-1
 	{"byte order mark keeps columns", "\ufefffluid,temperature/K,pressure/kPa\r\nn-pentane,hot,101.325\r\n", `d.csv:2:11: temperature/K: number "hot": not a decimal number; expected digits with a point as decimal mark, as in 420.9 or 1e-3`},
 	{"lines count comments, blank lines and lines in quotes", "# c\n\n" + head + "# c\n\"n-\npentane\",420.9,101.325\nn-pentane,hot,101.325\n", `d.csv:5:1: fluid: fluid "n-\npentane" is not known; near: n-pentane
 d.csv:7:11: temperature/K: number "hot": not a decimal number; expected digits with a point as decimal mark, as in 420.9 or 1e-3`},
+	{"problems of a row in the order of its fields", "pressure/kPa,outcome,temperature/K,fluid\n0,popped,hot,pentan\n", `d.csv:2:1: pressure/kPa: a pressure of 0 looks like a gauge reading; expected the absolute pressure (an open vessel has about 101.325 kPa)
+d.csv:2:3: outcome: "popped" unknown; expected boiled or intact
+d.csv:2:10: temperature/K: number "hot": not a decimal number; expected digits with a point as decimal mark, as in 420.9 or 1e-3
+d.csv:2:14: fluid: fluid "pentan" is not known; near: n-pentane`},
+	{"byte order mark counts as bytes of the file", "\ufeff\xe9", `d.csv:1:1: byte 0xE9 is not UTF-8 at byte 4 of the file; expected UTF-8 (is the file in Latin-1 or Windows-1252? save as "CSV UTF-8")`},
 	{"terminal control in a header", "fluid,temperature/\x1b[2J,pressure/kPa\n" + good, `d.csv:1:7: "temperature/\x1b[2J": unit "\x1b[2J": cannot be read at "\x1b[2J"; expected a UCUM code such as kPa, K/s or m-3.s-1`},
 	{"terminal control", head + "\"\x1b[31mred\",1\x1b[2J,101.325\n", `d.csv:2:1: fluid: fluid "\x1b[31mred" is not known; near: n-pentane
 d.csv:2:12: temperature/K: number "1\x1b[2J": not a decimal number; expected digits with a point as decimal mark, as in 420.9 or 1e-3`},

@@ -137,7 +137,7 @@ func (a *assembler) unit(c int, k column, unit string, hasUnit bool, at position
 }
 
 // missing reports required columns that are absent, and warns of ignored headers that resemble an absent
-// optional one.
+// one.
 func (a *assembler) missing(known []column, fields []string, ignored []int, at func(int) position) {
 	for c, k := range known {
 		if a.layout.field[c] >= 0 {
@@ -150,10 +150,8 @@ func (a *assembler) missing(known []column, fields []string, ignored []int, at f
 				continue
 			}
 			near = append(near, quoted(h))
-			if c >= required {
-				a.doubts.add("ignored "+k.name, Warning{File: a.info.Name, Line: at(i).line, Where: at(i).where,
-					Text: fmt.Sprintf("column %s is ignored; was %s meant?", quoted(h), k.header)})
-			}
+			a.doubts.add("ignored "+k.name, Warning{File: a.info.Name, Line: at(i).line, Where: at(i).where,
+				Text: fmt.Sprintf("column %s is ignored; was %s meant?", quoted(h), k.header)})
 		}
 		if c < required {
 			found := "column " + k.name + " is missing"

@@ -13,10 +13,10 @@
 //	method, batch    Method, Batch         group names
 //	diameter/mm      Volume        m³      πd³/6 of the droplet
 //	volume/nL        Volume        m³      agrees with diameter within 1 %, if both are given
-//	heating_rate/(K/s)             K/s     needs a volume
+//	heating_rate/…   HeatingRate   K/s     as heating_rate/(K/s); needs a volume
 //	holding_time/s   HoldingTime   s       needs a volume
 //	lifetime/s       Lifetime      s       mean waiting time at constant state; needs a volume
-//	flux/(m-3.s-1)   Flux          m⁻³s⁻¹  nucleation events per volume and time
+//	flux/(m-3.s-1)   Flux          m⁻³s⁻¹  nucleation events per volume and time, where it is known
 //	observed         Observed              temperature (default) or pressure
 //	outcome          Outcome               boiled (default) or intact
 //	source, provenance, note               text

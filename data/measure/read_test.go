@@ -11,6 +11,7 @@ import (
 	"strings"
 	"testing"
 	"testing/iotest"
+	"unsafe"
 
 	"github.com/google/go-cmp/cmp"
 
@@ -28,17 +29,17 @@ func read(t *testing.T, file string, o Options) *Set {
 
 func TestEveryColumn(t *testing.T) {
 	file := "\ufeff# heated droplets\r\n" +
-		"fluid,temperature/degC,pressure/bar,u_temperature/degC,u_pressure/mbar,method,batch,diameter/mm,volume/nL,heating_rate/(K/min),holding_time/ms,lifetime/s,flux/(cm-3.s-1),observed,outcome,source,provenance,note,operator,\r\n" +
-		"pentane ,147, 1.01325,0.5,2,droplet,b1,1,523.6,120,,,,,,\"Doe, J.\",measured,\"first\r\nline\",ann,\r\n" +
-		"\"1,3-butadiene\",104,-2,,,bubble,,,600,,250,,,pressure,intact,,,,,\r\n" +
-		"water,250,1,,,capillary,,,1e9,,,3600,,temperature,boiled,,,,,\r\n" +
-		"water,300,1,,,pulse,,,,,,,1e20,,,,,,,\r\n"
+		"fluid,temperature/degC,pressure/bar,u_temperature/degC,u_pressure/mbar,method,batch,diameter/mm,volume/nL,heating_rate/(K/min),holding_time/ms,lifetime/s,flux/(cm-3.s-1),observed,outcome,source,provenance,note,operator,,\r\n" +
+		"pentane ,147, 1.01325,0.5,2,droplet,b1,1,523.6,120,,,,,, \"Doe, J.\",measured,\"first\r\nline\",ann,,\r\n" +
+		"\"1,3-butadiene\",104,-2,,,bubble,,,600,,250,,,pressure,intact,,,,,,\r\n" +
+		"water,250,1,,,capillary,,,1e9,,,3600,,temperature,boiled,,,,,,\r\n" +
+		"water,300,1,,,pulse,,,,,,,1e20,,,,,,,,\r\n"
 	got := read(t, file, Options{KnownFluid: knownFluid})
 	want := &Set{
 		Files: []FileInfo{{Name: "d.csv", SHA256: fmt.Sprintf("%x", sha256.Sum256([]byte(file))), Rows: 4,
 			Columns: []string{"fluid", "temperature/degC", "pressure/bar", "u_temperature/degC", "u_pressure/mbar", "method", "batch", "diameter/mm", "volume/nL",
 				"heating_rate/(K/min)", "holding_time/ms", "lifetime/s", "flux/(cm-3.s-1)", "observed", "outcome", "source", "provenance", "note"},
-			IgnoredColumns: []string{"operator", "column 20"}}},
+			IgnoredColumns: []string{"operator", "column 20", "column 21"}}},
 		Rows: []Row{
 			{File: "d.csv", Line: 3, Fluid: "pentane", Key: "n-pentane", Temperature: 420.15, Pressure: 101325, UTemperature: 0.5, UPressure: 200,
 				HasUTemperature: true, HasUPressure: true, Method: "droplet", Batch: "b1", Volume: 523.6e-12, HeatingRate: 2, Source: "Doe, J.", Provenance: "measured", Note: "first\nline"},
@@ -83,6 +84,21 @@ func TestExclusions(t *testing.T) {
 	// The rows kept: droplets 1 and 2, and the row whose text differs.
 	if len(s.Rows) != 3 || s.Files[0].Rows != 3 || s.Rows[2].Line != 7 {
 		t.Errorf("%d rows kept, %d in FileInfo: %+v", len(s.Rows), s.Files[0].Rows, s.Rows)
+	}
+}
+
+// Records are compared field by field, not as one text.
+func TestFieldsKeepTheirBounds(t *testing.T) {
+	if s := read(t, "fluid,temperature/K,pressure/kPa,a,b\nwater,523,101,1,23\nwater,523,101,12,3\n", Options{}); len(s.Rows) != 2 {
+		t.Errorf("excluded %v", s.Excluded)
+	}
+}
+
+// Rows share one copy of equal texts and hold on to nothing else of their record.
+func TestEqualTextsAreShared(t *testing.T) {
+	s := read(t, "fluid,temperature/K,pressure/kPa,method\nwater,523,101,droplet\nwater,524,101,droplet\n", Options{})
+	if a, b := s.Rows[0].Method, s.Rows[1].Method; unsafe.StringData(a) != unsafe.StringData(b) {
+		t.Errorf("%q is kept twice", a)
 	}
 }
 

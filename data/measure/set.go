@@ -67,22 +67,25 @@ func Join(sets ...*Set) (*Set, error) {
 	var ps Problems
 	sums := map[string]string{}
 	seen := map[Row]string{}
-	for _, s := range sets {
+	for n, s := range sets {
 		for _, f := range s.Files {
 			if first, twice := sums[f.SHA256]; twice {
 				ps = append(ps, &Problem{File: f.Name, Found: "same bytes as " + first, Expected: "each file of measurements once"})
 			}
 			sums[f.SHA256] = f.Name
 		}
-		doubts := doubts{}
+		var repeats doubts
 		for i := range s.Rows {
 			r := s.Rows[i]
 			if first, repeat := seen[bare(r)]; repeat {
-				doubts.add("repeat", Warning{File: r.File, Line: r.Line, Where: r.Where,
+				repeats.add("repeat", Warning{File: r.File, Line: r.Line, Where: r.Where,
 					Text: fmt.Sprintf("%s: same as %s in every column read; both are kept", printable(r.Fluid), first)})
 			}
 		}
 		for i := range s.Rows {
+			if n == len(sets)-1 {
+				break // no set follows
+			}
 			if k := bare(s.Rows[i]); seen[k] == "" {
 				seen[k] = s.Rows[i].At()
 			}
@@ -91,7 +94,7 @@ func Join(sets ...*Set) (*Set, error) {
 		out.Rows = append(out.Rows, s.Rows...)
 		out.Excluded = append(out.Excluded, s.Excluded...)
 		out.Warnings = append(out.Warnings, s.Warnings...)
-		out.Warnings = append(out.Warnings, doubts.list...)
+		out.Warnings = append(out.Warnings, repeats.list...)
 	}
 	if len(out.Rows) == 0 && len(ps) == 0 {
 		ps = append(ps, &Problem{File: "measurements", Found: "no rows", Expected: "at least one row in one file"})

@@ -191,8 +191,8 @@ func (a *assembler) conditions(fields []string, at func(int) position) {
 			given = append(given, c)
 		}
 	}
-	known := columns()
 	if len(given) > 1 {
+		known := columns()
 		var names []string
 		for _, c := range given {
 			names = append(names, known[c].name)
@@ -203,7 +203,7 @@ func (a *assembler) conditions(fields []string, at func(int) position) {
 	}
 	if len(given) == 1 && given[0] != fluxColumn && !filled(volumeColumn) && !filled(diameterColumn) {
 		c := given[0]
-		a.fail(at(a.layout.field[c]), a.layout.header[c], known[c].name+" without the size of the liquid",
+		a.fail(at(a.layout.field[c]), a.layout.header[c], columns()[c].name+" without the size of the liquid",
 			"a volume or diameter in the same row", nil)
 	}
 }

@@ -125,7 +125,7 @@ func mistaken(lower string) []string {
 		return []string{"Pa"}
 	case "bara":
 		return []string{"bar"}
-	case "psia":
+	case "psia", "psi":
 		return []string{"[psi]"}
 	case "sec", "second", "seconds":
 		return []string{"s"}

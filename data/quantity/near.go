@@ -46,11 +46,14 @@ func nearUnits(symbol string) []string {
 	return Near(symbol, common())
 }
 
-// gauge reports whether symbol is a common name of a pressure above the atmosphere.
+// gauge reports whether symbol is a common name of a pressure above the atmosphere: a unit of pressure
+// followed by g or (g), in any case.
 func gauge(symbol string) bool {
-	switch strings.ToLower(symbol) {
-	case "barg", "mbarg", "psig", "kpag", "mpag", "pag", "atmg", "bar(g)", "barü", "atü":
-		return true
+	lower := strings.ToLower(symbol)
+	unit := strings.TrimSuffix(strings.TrimSuffix(strings.TrimSuffix(lower, "(g)"), "g"), "_")
+	switch unit = strings.TrimSpace(unit); unit {
+	case "bar", "mbar", "psi", "[psi]", "pa", "hpa", "kpa", "mpa", "atm":
+		return unit != lower
 	}
 	return false
 }

@@ -4,6 +4,7 @@ import (
 	"errors"
 	"math"
 	"math/big"
+	"strings"
 	"testing"
 
 	"gonum.org/v1/gonum/floats/scalar"
@@ -154,6 +155,9 @@ func TestParseUnitErrors(t *testing.T) {
 		{"mCel", UnknownUnit, `unit "mCel": unknown; did you mean Cel?`},
 		{"barg", GaugePressure, `unit "barg": is a gauge pressure; add the pressure of the atmosphere and give the absolute pressure`},
 		{"psig", GaugePressure, `unit "psig": is a gauge pressure; add the pressure of the atmosphere and give the absolute pressure`},
+		{"kPa(g)", GaugePressure, `unit "kPa(g)": is a gauge pressure; add the pressure of the atmosphere and give the absolute pressure`},
+		{"BAR_G", GaugePressure, `unit "BAR_G": is a gauge pressure; add the pressure of the atmosphere and give the absolute pressure`},
+		{"PSI", UnknownUnit, `unit "PSI": unknown; did you mean [psi]?`},
 		{"Cel.1", OffsetInProduct, `unit "Cel.1": a degree with a shifted zero must stand alone`},
 		{"Cel1", OffsetInProduct, `unit "Cel1": a degree with a shifted zero must stand alone`},
 		{"K/", Syntax, `unit "K/": cannot be read; expected a UCUM code such as kPa, K/s or m-3.s-1`},
@@ -225,6 +229,30 @@ func TestUnitProperties(t *testing.T) {
 			t.Fatalf("1/(%s) has dimension %v, want the inverse of %v", u, inverse.Dimension().SI(), u.Dimension().SI())
 		}
 	})
+}
+
+// No code can be read as two different units, with or without prefix.
+func TestCodesAreUnambiguous(t *testing.T) {
+	seen := map[string]bool{}
+	for _, a := range atoms() {
+		codes := []string{a.code}
+		if a.metric {
+			for _, p := range strings.Fields("Y Z E P T G M k h da d c m u n p f a z y") {
+				codes = append(codes, p+a.code)
+			}
+		}
+		for _, c := range codes {
+			if seen[c] {
+				t.Errorf("%s has two readings", c)
+			}
+			seen[c] = true
+			if u, err := ParseUnit(c); err == nil && u.Dimension() != a.dim {
+				t.Errorf("%s reads as %v, want %v", c, u.Dimension(), a.dim)
+			} else if err != nil && c != "10*" {
+				t.Error(err)
+			}
+		}
+	}
 }
 
 // Every dimension's SI code is a unit of that dimension with factor 1, and the units offered in error
