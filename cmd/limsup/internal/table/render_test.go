@@ -363,10 +363,13 @@ func TestJSONRowsEmbeds(t *testing.T) {
 }
 
 func TestNotesDoNotShareMemory(t *testing.T) {
-	base := Num(1).Note("first")
-	a, b := base.Note("second"), base.Note("third")
-	if !cmp.Equal(a.notes, []string{"first", "second"}) || !cmp.Equal(b.notes, []string{"first", "third"}) || len(base.notes) != 1 {
+	base := Num(1).Note("1").Note("2").Note("3") // three notes leave room for a fourth in the slice append grows
+	a, b := base.Note("a"), base.Note("b")
+	if !cmp.Equal(a.notes, []string{"1", "2", "3", "a"}) || !cmp.Equal(b.notes, []string{"1", "2", "3", "b"}) || len(base.notes) != 3 {
 		t.Errorf("notes %q, %q, %q", base.notes, a.notes, b.notes)
+	}
+	if same := base.Note("2").Note(""); !cmp.Equal(same.notes, base.notes) {
+		t.Errorf("a repeated and an empty note changed the notes to %q", same.notes)
 	}
 }
 
