@@ -34,7 +34,8 @@ type Outcome struct {
 // of rounding only.
 //
 // An interval that is empty or not finite is refused before the first step, and
-// a value NaN ends the search; neither outcome is Converged or AtEnd.
+// a value NaN ends the search; neither outcome is Converged or AtEnd. Nor is that
+// of a search driven against an end at zero, which no relative width reaches.
 func Newton(f func(x float64) (value, slope float64), lo, hi, x float64, rising bool, tol float64) Outcome {
 	first, last := lo, hi
 	width := hi - lo
@@ -86,6 +87,7 @@ func Newton(f func(x float64) (value, slope float64), lo, hi, x float64, rising 
 		}
 		x = next
 	}
+	o.Iterations = maxIterations
 	return o
 }
 
