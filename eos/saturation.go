@@ -72,7 +72,7 @@ func (f *Form) Saturate(tau float64) (c Coexistence, ok bool) {
 			} else {
 				hi = p
 			}
-			if !(next > lo && next < hi) {
+			if !(next >= lo && next <= hi) { // a step of zero leaves next on the end just set
 				next = 0.5 * (lo + hi)
 			}
 		}
