@@ -1,0 +1,304 @@
+package fit
+
+import (
+	"errors"
+	"fmt"
+	"math"
+
+	"gonum.org/v1/gonum/mat"
+
+	"limsup/data/measure"
+	"limsup/fit/leastsq"
+)
+
+// Options are settings of a calibration that do not change its result.
+type Options struct {
+	Workers int // goroutines over rows; 0: as many as processors
+	// Warm starts the search from an earlier calibration of the same plan.
+	Warm *Calibration
+}
+
+// Estimate is one estimated parameter.
+type Estimate struct {
+	Name  string
+	By    By
+	Group string
+	Role  Role
+	Unit  string
+	Value float64
+	// U is the standard uncertainty; HasU is false where there is none, for the
+	// reason that Reason gives.
+	U       float64
+	HasU    bool
+	Reason  string
+	AtBound string // "lower", "upper", or ""
+
+	Start, Lower, Upper float64
+}
+
+// Label names the estimate: "slope[n-pentane]".
+func (e *Estimate) Label() string {
+	f := Free{Name: e.Name, Group: e.Group, Role: e.Role}
+	return f.Label()
+}
+
+// RowResult is one observation beside its prediction.
+type RowResult struct {
+	Index        int     // into Calibration.Data.Observations
+	Predicted    float64 // limit in K, offset included
+	Residual     float64 // measured − predicted, K
+	Variance     float64 // of the residual: stated uncertainties and spread, K²
+	Standardised float64 // residual/√variance
+	Leverage     float64 // share of its own reading in its prediction, 0 to 1
+	Log10Flux    float64 // log₁₀J at the predicted limit; 0 for a spinodal
+	Gradient     []float64
+}
+
+// Calibration is the result of tuning a variant to measurements.
+type Calibration struct {
+	Plan Plan
+	Data *Data
+
+	// Locations come first, then the spreads, as in Covariance.
+	Parameters []Estimate
+	// Covariance of the locations and the spreads; rows and columns without an
+	// uncertainty are zero.
+	Covariance *mat.SymDense
+	Locations  int // number of locations
+
+	Rows []RowResult
+
+	RMSE, Bias float64 // of the residuals of boiled rows, K
+	Spread     float64 // root mean square of the spreads of the rows, K
+	LogLik     float64 // ln of the likelihood at the estimates
+	Degrees    int     // rows less locations
+
+	References map[string]string // of offsets: "method" → the reference method
+	Identity   Identity          // what can and what cannot be told apart
+
+	Converged, Usable bool
+	Reason            string
+	Warnings          []string
+	Evaluations       int // of all rows
+
+	theta, psi []float64
+}
+
+// maxAlternations bounds the alternation between locations and spreads; each
+// round leaves a few per cent of the error of the last.
+const maxAlternations = 60
+
+// Calibrate tunes the plan's variant to data made by Prepare with the same plan.
+//
+// Errors: *OptionError for a plan that the data cannot serve, *TooFewError,
+// *ConvergenceError when no usable parameters were found, *RowError.
+func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
+	p, err := p.Complete()
+	if err != nil {
+		return nil, err
+	}
+	if p.DefaultTerms && len(d.Observations) > 0 && d.OwnFlux() == len(d.Observations) {
+		for i := range p.Terms {
+			if p.Terms[i].Name == Threshold {
+				p.Terms[i].Name = Prefactor
+			}
+		}
+	}
+	if len(d.Observations) == 0 {
+		return nil, &TooFewError{0, len(p.Terms), "no usable row" + firstReason(d.Excluded)}
+	}
+	lay, err := newLayout(&p, d.Observations)
+	if err != nil {
+		return nil, err
+	}
+	if err := enough(lay, d, &p); err != nil {
+		return nil, err
+	}
+	lik := &likelihood{system: newSystem(&p, d.Observations, lay, o.Workers), noise: p.Noise}
+	if lik.anchors, err = newAnchors(&p, d.Observations, lay); err != nil {
+		return nil, err
+	}
+	c := &Calibration{Plan: p, Data: d, Locations: len(lay.theta), References: lay.references,
+		theta: starts(lay.theta), psi: starts(lay.psi)}
+	if w := o.Warm; w != nil && len(w.theta) == len(c.theta) && len(w.psi) == len(c.psi) {
+		copy(c.theta, w.theta)
+		copy(c.psi, w.psi)
+	}
+	covPsi, err := c.alternate(lik)
+	if err != nil {
+		return nil, err
+	}
+	if err := c.finish(lik, covPsi); err != nil {
+		return nil, err
+	}
+	return c, nil
+}
+
+// firstReason quotes an exclusion where it explains why nothing is left.
+func firstReason(e []measure.Exclusion) string {
+	if len(e) == 0 {
+		return ""
+	}
+	return fmt.Sprintf(" (%d excluded; the first: %s)", len(e), e[0].String())
+}
+
+// enough refuses data that cannot determine the parameters by their number alone.
+func enough(l *layout, d *Data, p *Plan) error {
+	n, k := len(d.Observations), len(l.theta)+len(l.psi)
+	pooled, informed := 0, len(l.priors)+anchorPoints*len(p.Anchors)
+	for _, pl := range l.pools {
+		pooled += len(pl.values)
+	}
+	if n+pooled+informed < k {
+		return &TooFewError{n, k, "measure more, or free fewer parameters"}
+	}
+	if n == len(l.theta)+len(l.psi)-1 && len(l.psi) > 0 && len(l.priors) == 0 && len(p.Anchors) == 0 && pooled == 0 || n == 1 && len(l.psi) > 0 {
+		return &TooFewError{n, k, "the spread cannot be told from residuals that are all zero; fix it (--fix spread=VALUE) or measure more"}
+	}
+	touched := l.touched(d.Observations)
+	for i, ok := range touched {
+		if !ok {
+			f := l.theta[i]
+			why := "it acts on no row"
+			if f.Name == Threshold {
+				why = "every row carries its own flux, which the threshold does not move; tune prefactor instead"
+			}
+			return &OptionError{"tune", f.Label(), why}
+		}
+	}
+	sd := 0.0
+	for o := range l.sd {
+		sd = math.Max(sd, l.sd[o])
+	}
+	for o := range d.Observations {
+		r := &d.Observations[o]
+		if l.spread[o] < 0 && l.sd[o] == 0 && !(r.UTemperature > 0) {
+			return &OptionError{"fix", "spread=0", fmt.Sprintf("a stated uncertainty in every row; %s has none", r.At())}
+		}
+	}
+	return nil
+}
+
+// alternate finds θ at given ψ and ψ at given θ in turn.
+func (c *Calibration) alternate(lik *likelihood) (covPsi *mat.SymDense, err error) {
+	variance := make([]float64, len(lik.obs))
+	c.Converged, c.Usable = true, true
+	settings := leastsq.Settings{Starts: c.Plan.Restarts, Seed: c.Plan.Seed}
+	if err := lik.evaluate(c.theta); err != nil {
+		return nil, &ConvergenceError{c.Plan.Variant.Name(), "the start values have no prediction: " + err.Error(), err}
+	}
+	for round := 0; ; round++ {
+		if err := lik.evaluate(c.theta); err != nil {
+			return nil, err
+		}
+		lik.variances(c.psi, variance)
+		before := append([]float64(nil), c.theta...)
+		if len(c.theta) > 0 {
+			res, err := leastsq.Minimize(c.objective(lik, variance), settings)
+			if err != nil {
+				return nil, &ConvergenceError{c.Plan.Variant.Name(), err.Error(), err}
+			}
+			settings = leastsq.Settings{}
+			copy(c.theta, res.X)
+			c.Evaluations += res.Evaluations
+			c.Converged, c.Usable, c.Reason = res.Converged, res.Usable, res.Reason
+			if !res.Usable {
+				return nil, &ConvergenceError{c.Plan.Variant.Name(), res.Reason, nil}
+			}
+		} else {
+			c.Reason = "no location is free; only the spread was estimated"
+		}
+		moved := change(before, c.theta, lik.lay.theta)
+		if len(c.psi) > 0 {
+			z, err := newLinearised(lik, c.theta, c.active(lik.lay))
+			if err != nil {
+				return nil, err
+			}
+			psi, cov, err := z.estimate(c.psi, lik.lay.psi)
+			if errors.Is(err, errSingular) {
+				// Without determined locations there is no adjustment; the caller's
+				// identifiability report says which parameters are to blame.
+				c.warn("the spread is taken by maximum likelihood without adjustment for the estimated parameters, which the data do not determine")
+				psi, cov, err = c.unadjusted(lik)
+			}
+			if err != nil {
+				return nil, &ConvergenceError{c.Plan.Variant.Name(), "spread: " + err.Error(), err}
+			}
+			covPsi = cov
+			moved = math.Max(moved, change(c.psi, psi, lik.lay.psi))
+			copy(c.psi, psi)
+		}
+		if moved < 1e-9 || round > 0 && len(c.psi) == 0 && moved < 1e-8 {
+			return covPsi, nil
+		}
+		if round == maxAlternations {
+			c.Converged = false
+			c.Reason = fmt.Sprintf("parameters and spreads still move by %.1e of their range after %d alternations", moved, round)
+			return covPsi, nil
+		}
+	}
+}
+
+// unadjusted is the estimate of ψ with the locations held.
+func (c *Calibration) unadjusted(lik *likelihood) ([]float64, *mat.SymDense, error) {
+	z, err := newLinearised(lik, c.theta, nil)
+	if err != nil {
+		return nil, nil, err
+	}
+	return z.estimate(c.psi, lik.lay.psi)
+}
+
+// change is the largest change of a parameter relative to the width of its bounds.
+func change(a, b []float64, f []Free) float64 {
+	worst := 0.0
+	for i := range a {
+		worst = math.Max(worst, math.Abs(a[i]-b[i])/(f[i].Upper-f[i].Lower))
+	}
+	return worst
+}
+
+func (c *Calibration) warn(s string) {
+	for _, w := range c.Warnings {
+		if w == s {
+			return
+		}
+	}
+	c.Warnings = append(c.Warnings, s)
+}
+
+func (c *Calibration) objective(lik *likelihood, variance []float64) leastsq.Objective {
+	params := make([]leastsq.Param, len(c.theta))
+	for i, f := range lik.lay.theta {
+		params[i] = leastsq.Param{Name: f.Label(), Start: c.theta[i], Lower: f.Lower, Upper: f.Upper}
+	}
+	return leastsq.Objective{Params: params, Size: len(lik.obs), Eval: func(theta, grad []float64, curv *mat.SymDense) (float64, error) {
+		g := grad
+		if g == nil && curv != nil {
+			g = make([]float64, len(theta))
+		}
+		return lik.terms(theta, c.psi, variance, g, curv)
+	}}
+}
+
+// atBound tells at which bound a parameter stands.
+func atBound(x float64, f *Free) string {
+	tol := 1e-7 * (f.Upper - f.Lower)
+	switch {
+	case x <= f.Lower+tol:
+		return "lower"
+	case x >= f.Upper-tol:
+		return "upper"
+	}
+	return ""
+}
+
+// active are the locations that are not at a bound.
+func (c *Calibration) active(l *layout) []int {
+	var a []int
+	for i := range l.theta {
+		if atBound(c.theta[i], &l.theta[i]) == "" {
+			a = append(a, i)
+		}
+	}
+	return a
+}

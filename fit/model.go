@@ -1,0 +1,382 @@
+package fit
+
+import (
+	"math"
+	"slices"
+	"sort"
+
+	"gonum.org/v1/gonum/mat"
+	"gonum.org/v1/gonum/stat/distuv"
+
+	"limsup/data/fluid"
+	"limsup/eos/nucleation"
+)
+
+// Model predicts superheat limits: a variant with parameters, and what is known of
+// their uncertainty and of the range in which they were found.
+type Model struct {
+	Variant  Variant
+	Settings []Setting // parameters that were not tuned but set
+	// Parameters and Covariance are those of the calibration, empty for an untuned model.
+	Parameters []Estimate
+	Covariance *mat.SymDense
+	Degrees    int // degrees of freedom of the calibration
+	Noise      Noise
+	References map[string]string
+	Validity   Validity
+	Calibrated bool
+
+	settings Plan // completed, for start values
+}
+
+// Validity is the range of the data behind a calibrated model.
+type Validity struct {
+	Fluids                          []string
+	Methods                         []string
+	PressureLow, PressureHigh       float64 // Pa
+	TemperatureLow, TemperatureHigh float64 // K
+}
+
+// Untuned returns the model of a variant with its published parameters, or those
+// that settings give.
+//
+// Errors: *OptionError, *eos.UnknownEquationError.
+func Untuned(v Variant, settings ...Setting) (*Model, error) {
+	p, err := Plan{Variant: v, Fixed: append([]Setting{{Name: Spread, Value: 0}}, settings...)}.Complete()
+	if err != nil {
+		return nil, err
+	}
+	return &Model{Variant: p.Variant, Settings: settings, settings: p}, nil
+}
+
+// Model is the calibrated model.
+func (c *Calibration) Model() *Model {
+	m := &Model{Variant: c.Plan.Variant, Settings: c.Plan.Fixed, Parameters: c.Parameters, Covariance: c.Covariance, Degrees: c.Degrees,
+		Noise: c.Plan.Noise, References: c.References, Calibrated: true}
+	m.Validity = validity(c.Data.Observations)
+	if err := m.Prepare(); err != nil {
+		panic("fit: plan of a calibration no longer completes: " + err.Error()) // it did when the calibration began
+	}
+	return m
+}
+
+// Prepare completes a model that was put together from its exported fields.
+//
+// Errors: *OptionError, *eos.UnknownEquationError.
+func (m *Model) Prepare() error {
+	p, err := Plan{Variant: m.Variant, Fixed: m.Settings, Noise: m.Noise}.Complete()
+	if err != nil {
+		return err
+	}
+	m.Variant, m.Noise, m.settings = p.Variant, p.Noise, p
+	return nil
+}
+
+func validity(obs []Observation) Validity {
+	v := Validity{PressureLow: math.Inf(1), PressureHigh: math.Inf(-1), TemperatureLow: math.Inf(1), TemperatureHigh: math.Inf(-1)}
+	for i := range obs {
+		o := &obs[i]
+		v.PressureLow, v.PressureHigh = math.Min(v.PressureLow, o.Pressure), math.Max(v.PressureHigh, o.Pressure)
+		v.TemperatureLow, v.TemperatureHigh = math.Min(v.TemperatureLow, o.Temperature), math.Max(v.TemperatureHigh, o.Temperature)
+	}
+	v.Fluids, _ = groups(obs, ByFluid)
+	v.Methods, _ = groups(obs, ByMethod)
+	return v
+}
+
+// Query is a state to predict.
+type Query struct {
+	Record *fluid.Record
+	// Pressure in Pa asks for the limit temperature; with AtTemperature, Temperature
+	// in K asks for the limit pressure.
+	Pressure      float64
+	Temperature   float64
+	AtTemperature bool
+	// Method and Batch choose values that a model has by method or batch. "" is the
+	// reference method, whose offset is zero.
+	Method, Batch string
+	// Target, if OwnFlux, replaces the threshold.
+	Target  nucleation.Target
+	OwnFlux bool
+}
+
+// Prediction is a predicted limit.
+type Prediction struct {
+	Fluid       string
+	Limit       Limit
+	Temperature float64 // K
+	Pressure    float64 // Pa
+	// U is the standard uncertainty of a new measurement of the limit: of the
+	// temperature in K, also for a limit pressure, mapped along the line of limits.
+	// It combines the covariance of the parameters and the spread; HasU is false
+	// for a model without calibration or without covariance.
+	U, UPressure float64 // K, Pa
+	HasU         bool
+	Low, High    float64 // 95 % interval of the quantity asked for, K or Pa
+	Log10Flux    float64 // at the limit; 0 with HasFlux false for a spinodal
+	HasFlux      bool
+	// SpinodalT and SaturationT are on the same equation at the same pressure; the
+	// flags say whether they exist there.
+	SpinodalT, SaturationT float64
+	HasSpinodal            bool
+	HasSaturation          bool
+	Extrapolated           bool
+	Warnings               []string
+}
+
+// lookup finds the value of a parameter for a query: the index of its estimate,
+// or -1 and the value, and the extra variance of a group that was not measured.
+type lookup struct {
+	at       int
+	value    float64
+	variance float64
+	foreign  bool // the group was not in the data
+}
+
+func (m *Model) lookup(name string, q *Query) lookup {
+	found := lookup{at: -1}
+	tuned := false
+	var mean, spread = -1, 0.0
+	for i := range m.Parameters {
+		e := &m.Parameters[i]
+		if e.Name != name {
+			continue
+		}
+		tuned = true
+		switch e.Role {
+		case RolePoolMean:
+			mean = i
+		case RolePoolSpread:
+			spread = e.Value
+		default:
+			if e.Group == m.groupFor(e.By, q) {
+				return lookup{at: i, value: e.Value}
+			}
+		}
+	}
+	if mean >= 0 {
+		return lookup{at: mean, value: m.Parameters[mean].Value, variance: spread * spread, foreign: true}
+	}
+	p, err := parameterOf(name, &m.Variant)
+	if err == nil {
+		found.value = m.settings.value(p, "")
+	}
+	if tuned {
+		// Not a measured group. The reference group of an offset is zero by definition.
+		found.foreign = !(name == Offset && m.isReference(q))
+	}
+	return found
+}
+
+func (m *Model) isReference(q *Query) bool {
+	for i := range m.Parameters {
+		if e := &m.Parameters[i]; e.Name == Offset {
+			g := m.groupFor(e.By, q)
+			return g == m.References[string(e.By)]
+		}
+	}
+	return true
+}
+
+// groupFor is the group of a query.
+func (m *Model) groupFor(by By, q *Query) string {
+	switch by {
+	case ByFluid:
+		return q.Record.Key
+	case ByMethod:
+		if q.Method == "" {
+			return m.References[string(ByMethod)]
+		}
+		return q.Method
+	case ByBatch:
+		if q.Batch == "" {
+			return m.References[string(ByBatch)]
+		}
+		return q.Batch
+	}
+	return ""
+}
+
+// Values are the parameters that the model uses for a query.
+func (m *Model) Values(q *Query) Values {
+	v, _ := m.values(q)
+	return v
+}
+
+func (m *Model) values(q *Query) (v Values, found [locations]lookup) {
+	for i, f := range v.fields() {
+		found[i] = m.lookup(locationNames[i], q)
+		*f = found[i].value
+	}
+	found[locOffset] = m.lookup(Offset, q)
+	return v, found
+}
+
+// Physics builds the fluid of a query under the model.
+//
+// Errors: as NewPhysics.
+func (m *Model) Physics(q *Query) (*Physics, error) {
+	return NewPhysics(m.Variant, q.Record, m.Values(q))
+}
+
+// Predict returns the limit of a query.
+//
+// Errors: *nucleation.NoLimitError, *eos.DomainError and the other errors of the
+// physics; *UnavailableError.
+func (m *Model) Predict(q Query) (Prediction, error) {
+	v, found := m.values(&q)
+	ph, err := NewPhysics(m.Variant, q.Record, v)
+	if err != nil {
+		return Prediction{}, err
+	}
+	out := Prediction{Fluid: q.Record.Key, Limit: m.Variant.Limit, Pressure: q.Pressure, Temperature: q.Temperature}
+	offset := found[locOffset].value
+	if q.AtTemperature {
+		if out.Pressure, err = ph.limitPressure(q.Temperature-offset, q.Target, q.OwnFlux); err != nil {
+			return Prediction{}, err
+		}
+	}
+	l, err := ph.limit(out.Pressure, q.Target, q.OwnFlux, q.Temperature)
+	if err != nil {
+		return Prediction{}, err
+	}
+	if !q.AtTemperature {
+		out.Temperature = l.T + offset
+	}
+	if m.Variant.Limit == Kinetic {
+		out.Log10Flux, out.HasFlux = l.lnJ/math.Ln10, true
+	}
+	m.uncertainty(&out, &q, &l, &found)
+	if s, err := ph.Model.LiquidSpinodalTemperature(out.Pressure); err == nil {
+		out.SpinodalT, out.HasSpinodal = s.T, true
+	}
+	out.SaturationT, out.HasSaturation = ph.saturationTemperature(out.Pressure)
+	m.compareRange(&out, &q, &found)
+	return out, nil
+}
+
+// limitPressure is the pressure at which the liquid at T reaches its limit.
+func (ph *Physics) limitPressure(T float64, t nucleation.Target, own bool) (float64, error) {
+	if ph.Variant.Limit == Spinodal {
+		s, _, err := ph.Model.Spinodal(T)
+		return s.P, err
+	}
+	if !own {
+		t = nucleation.Threshold(ph.Threshold)
+	}
+	k, err := ph.Fluid.KineticPressure(T, t, 0)
+	return k.P, err
+}
+
+// saturationTemperature is that of the source of properties: of the correlation
+// by bisection inside its range, else of the equation.
+func (ph *Physics) saturationTemperature(P float64) (float64, bool) {
+	if ph.Variant.Properties == nucleation.FromCorrelation {
+		c := ph.Record.VapourPressure
+		lo, hi := c.Range()
+		at := func(T float64) float64 { p, _, _ := c.At(T); return p }
+		if !(P > at(lo) && P < at(hi)) {
+			return 0, false
+		}
+		for range 60 {
+			if mid := 0.5 * (lo + hi); at(mid) < P {
+				lo = mid
+			} else {
+				hi = mid
+			}
+		}
+		return 0.5 * (lo + hi), true
+	}
+	s, err := ph.Model.SaturationTemperature(P)
+	return s.T, err == nil
+}
+
+// uncertainty combines g'Cg with the spread.
+func (m *Model) uncertainty(out *Prediction, q *Query, l *limitValue, found *[locations]lookup) {
+	if !m.Calibrated || m.Covariance == nil {
+		return
+	}
+	g := make([]float64, len(m.Parameters))
+	extra, complete := 0.0, true
+	for i, f := range found {
+		d := derivative(&l.d, i)
+		if f.at >= 0 {
+			g[f.at] += d
+			e := &m.Parameters[f.at]
+			if !e.HasU && d != 0 && e.AtBound == "" {
+				complete = false
+			}
+		}
+		extra += d * d * f.variance
+	}
+	if !complete {
+		out.Warnings = append(out.Warnings, "no uncertainty: the calibration has none for a parameter that the limit depends on")
+		return
+	}
+	s := m.spread(q)
+	if m.Noise.Kind == Student && m.Noise.Degrees > 2 {
+		s *= math.Sqrt(m.Noise.Degrees / (m.Noise.Degrees - 2))
+	}
+	out.U = math.Sqrt(quadratic(m.Covariance, g) + extra + s*s)
+	out.UPressure = math.Abs(out.U / l.dTdP)
+	out.HasU = true
+	t := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: float64(m.Degrees)}.Quantile(0.975)
+	if q.AtTemperature {
+		out.Low, out.High = out.Pressure-t*out.UPressure, out.Pressure+t*out.UPressure
+	} else {
+		out.Low, out.High = out.Temperature-t*out.U, out.Temperature+t*out.U
+	}
+}
+
+// spread is the standard deviation of a reading of the query beyond stated
+// uncertainties: that of its group or, for a group that was not measured, the
+// largest.
+func (m *Model) spread(q *Query) float64 {
+	worst, tuned := 0.0, false
+	for i := range m.Parameters {
+		e := &m.Parameters[i]
+		if e.Name != Spread {
+			continue
+		}
+		if e.Group == m.groupFor(e.By, q) {
+			return e.Value
+		}
+		worst, tuned = math.Max(worst, e.Value), true
+	}
+	if !tuned {
+		p, err := parameterOf(Spread, &m.Variant)
+		if err == nil {
+			return m.settings.value(p, "")
+		}
+	}
+	return worst
+}
+
+// compareRange compares a prediction with the data behind the model.
+func (m *Model) compareRange(out *Prediction, q *Query, found *[locations]lookup) {
+	if !m.Calibrated {
+		return
+	}
+	v := &m.Validity
+	warn := func(s string) {
+		out.Extrapolated = true
+		out.Warnings = append(out.Warnings, s)
+	}
+	if !slices.Contains(v.Fluids, q.Record.Key) {
+		warn(q.Record.Key + " was not among the fluids of the calibration")
+	}
+	const slack = 1e-9
+	if w := slack * math.Abs(v.PressureHigh); out.Pressure < v.PressureLow-w || out.Pressure > v.PressureHigh+w {
+		warn("the pressure is outside the calibrated range")
+	}
+	var foreign []string
+	for i, f := range found {
+		if f.foreign {
+			foreign = append(foreign, locationNames[i])
+		}
+	}
+	if len(foreign) > 0 {
+		sort.Strings(foreign)
+		warn("not measured for this group, so taken from the mean of the groups or as published: " + join(foreign))
+	}
+}

@@ -1,0 +1,120 @@
+package fit
+
+import (
+	"fmt"
+	"math"
+
+	"gonum.org/v1/gonum/stat/distuv"
+)
+
+// NoiseKind names a distribution of measured minus predicted limits.
+type NoiseKind string
+
+// The distributions.
+const (
+	Gaussian NoiseKind = "gaussian"
+	Student  NoiseKind = "student"  // heavy tails: single rows far off pull little
+	Survival NoiseKind = "survival" // each droplet boils at random with the flux it sees
+)
+
+// Noise is the distribution of the readings about the predicted limits.
+type Noise struct {
+	Kind NoiseKind
+	// Degrees are the degrees of freedom of Student noise; 0 means 4, the smallest
+	// whole number with a finite fourth moment, common practice for robust regression.
+	Degrees float64
+}
+
+func (n Noise) complete() (Noise, error) {
+	fill(&n.Kind, Gaussian)
+	switch n.Kind {
+	case Gaussian, Survival:
+	case Student:
+		if n.Degrees == 0 {
+			n.Degrees = 4
+		}
+		if !(n.Degrees >= 1 && n.Degrees <= 1000) {
+			return n, &OptionError{"degrees of freedom", fmt.Sprintf("%.10g", n.Degrees), "1 to 1000"}
+		}
+	default:
+		return n, &OptionError{"noise", string(n.Kind), "one of gaussian, student, survival"}
+	}
+	return n, nil
+}
+
+// density is −ln of the density (or probability) of one row with its derivatives.
+type density struct {
+	nll    float64
+	dr, dv float64 // ∂nll/∂r, ∂nll/∂v
+	irr    float64 // information about r: ∂²nll/∂r² or its expectation, ≥ 0
+	ivv    float64 // information about v
+}
+
+// of returns the density of the residual r with variance v. An intact row says
+// only that the limit lies above the reading.
+func (n *Noise) of(r, v float64, intact bool) density {
+	switch {
+	case n.Kind == Student && intact:
+		return n.studentIntact(r, v)
+	case n.Kind == Student:
+		ν := n.Degrees
+		w := (ν + 1) / (ν*v + r*r)
+		a, _ := math.Lgamma((ν + 1) / 2)
+		b, _ := math.Lgamma(ν / 2)
+		return density{
+			nll: 0.5*(ν+1)*math.Log1p(r*r/(ν*v)) + 0.5*math.Log(ν*math.Pi*v) + b - a,
+			dr:  w * r,
+			dv:  0.5/v - 0.5*w*r*r/v,
+			irr: (ν + 1) / ((ν + 3) * v),
+			ivv: 0.5 * ν / ((ν + 3) * v * v),
+		}
+	case intact:
+		return normalIntact(r, v)
+	default:
+		return density{
+			nll: 0.5*math.Log(2*math.Pi*v) + 0.5*r*r/v,
+			dr:  r / v,
+			dv:  0.5/v - 0.5*r*r/(v*v),
+			irr: 1 / v,
+			ivv: 0.5 / (v * v),
+		}
+	}
+}
+
+// normalIntact is −ln Φ(z) with z = −r/√v and the hazard h = φ(z)/Φ(z).
+func normalIntact(r, v float64) density {
+	s := math.Sqrt(v)
+	z := -r / s
+	lnΦ, h := lnNormal(z)
+	c := h * (z + h) // −d²lnΦ/dz², between 0 and 1
+	return density{nll: -lnΦ, dr: h / s, dv: 0.5 * h * z / v, irr: c / v, ivv: 0.25 * c * z * z / (v * v)}
+}
+
+// lnNormal returns ln Φ(z) and φ(z)/Φ(z) also far in the lower tail, where Φ
+// underflows; there by the continued fraction of the Mills ratio (Abramowitz and
+// Stegun 26.2.14).
+func lnNormal(z float64) (lnΦ, hazard float64) {
+	const lnSqrt2Pi = 0.91893853320467274178
+	if z > -12 {
+		Φ := 0.5 * math.Erfc(-z/math.Sqrt2)
+		return math.Log(Φ), math.Exp(-0.5*z*z-lnSqrt2Pi) / Φ
+	}
+	x := -z
+	f := x
+	for k := 40; k >= 1; k-- {
+		f = x + float64(k)/f
+	}
+	return -0.5*z*z - lnSqrt2Pi - math.Log(f), f
+}
+
+// studentIntact is −ln of the probability that a Student variable exceeds r/√v.
+func (n *Noise) studentIntact(r, v float64) density {
+	s := math.Sqrt(v)
+	t := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: n.Degrees}
+	z := -r / s
+	F := t.CDF(z)
+	h := t.Prob(z) / F
+	// dlnprob/dz = −(ν+1)z/(ν+z²)
+	c := math.Max(0, h*((n.Degrees+1)*z/(n.Degrees+z*z)+h))
+	return density{nll: -math.Log(F), dr: h / s, dv: 0.5 * h * z / v, irr: c / v, ivv: 0.25 * c * z * z / (v * v)}
+}

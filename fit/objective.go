@@ -1,0 +1,158 @@
+package fit
+
+import (
+	"math"
+
+	"gonum.org/v1/gonum/mat"
+)
+
+// This file holds −ln of the likelihood of the locations θ at given spreads ψ,
+//
+//	−ln L = Σ_i nll(r_i, v_i) + Σ_pools Σ_g ½((θ_g − μ)/τ)² + Σ_priors ½((θ − θ₀)/s)² + Σ_anchors ½a²,
+//
+// with its gradient and its expected curvature. Constants that do not depend on θ
+// are kept so that values compare across ψ.
+
+// likelihood is the objective of one calibration.
+type likelihood struct {
+	*system
+	anchors []anchored
+	noise   Noise
+}
+
+// terms is −ln L with its derivatives with respect to θ. grad and curv may be nil.
+// The variance of each row is taken at the limits of the evaluation, as a constant.
+func (l *likelihood) terms(theta, psi []float64, variance []float64, grad []float64, curv *mat.SymDense) (float64, error) {
+	if err := l.evaluate(theta); err != nil {
+		return 0, err
+	}
+	clearAll(grad, curv)
+	value := 0.0
+	for i := range l.obs {
+		v := variance[i]
+		d := l.density(i, l.residual(i), v)
+		value += d.nll
+		if grad == nil {
+			continue
+		}
+		// r = measured − T(θ) − offset
+		l.addRow(i, -d.dr, d.irr, grad, curv)
+	}
+	value += l.addPenalties(theta, psi, grad, curv)
+	for k := range l.anchors {
+		r, d, err := l.anchors[k].residual(l.cells)
+		if err != nil {
+			return 0, err
+		}
+		value += 0.5 * r * r
+		if grad != nil {
+			l.addAnchor(&l.anchors[k], r, d, grad, curv)
+		}
+	}
+	return value, nil
+}
+
+// density is the noise density of observation i for a residual r.
+func (l *likelihood) density(i int, r, v float64) density {
+	return l.noise.of(r, v, l.obs[i].Outcome != 0)
+}
+
+// addRow adds the derivatives of one row: slope is ∂nll/∂T_predicted, info the
+// information about it.
+func (l *likelihood) addRow(i int, slope, info float64, grad []float64, curv *mat.SymDense) {
+	idx, d := &l.lay.index[i], &l.limit[i].d
+	for a := range idx {
+		ia := int(idx[a])
+		if ia < 0 {
+			continue
+		}
+		da := derivative(d, a)
+		grad[ia] += slope * da
+		for b := a; curv != nil && b < len(idx); b++ {
+			ib := int(idx[b])
+			if ib < 0 {
+				continue
+			}
+			add(curv, ia, ib, info*da*derivative(d, b))
+		}
+	}
+}
+
+// derivative is ∂(T_predicted + offset)/∂location.
+func derivative(d *[locations]float64, a int) float64 {
+	if a == locOffset {
+		return 1
+	}
+	return d[a]
+}
+
+// add adds to an element of a symmetric matrix. The cross term of two different
+// locations that happen to be the same free parameter cannot occur.
+func add(m *mat.SymDense, i, j int, v float64) { m.SetSym(i, j, m.At(i, j)+v) }
+
+// addPenalties adds pools and priors.
+func (l *likelihood) addPenalties(theta, psi []float64, grad []float64, curv *mat.SymDense) float64 {
+	value := 0.0
+	normal := func(x, s float64, plus, minus int) {
+		value += 0.5*x*x/(s*s) + math.Log(s) + 0.5*math.Log(2*math.Pi)
+		if grad == nil {
+			return
+		}
+		w := 1 / (s * s)
+		grad[plus] += w * x
+		if minus >= 0 {
+			grad[minus] -= w * x
+		}
+		if curv != nil {
+			add(curv, plus, plus, w)
+			if minus >= 0 {
+				add(curv, minus, minus, w)
+				add(curv, plus, minus, -w)
+			}
+		}
+	}
+	for _, p := range l.lay.pools {
+		for _, g := range p.values {
+			normal(theta[g]-theta[p.mean], psi[p.spread], g, p.mean)
+		}
+	}
+	for _, p := range l.lay.priors {
+		normal(theta[p.at]-p.mean, p.spread, p.at, -1)
+	}
+	return value
+}
+
+func (l *likelihood) addAnchor(a *anchored, r float64, d [3]float64, grad []float64, curv *mat.SymDense) {
+	idx := l.lay.cells[a.cell].index[2:5]
+	for i := range idx {
+		ii := int(idx[i])
+		if ii < 0 {
+			continue
+		}
+		grad[ii] += r * d[i]
+		for j := i; curv != nil && j < len(idx); j++ {
+			if jj := int(idx[j]); jj >= 0 {
+				add(curv, ii, jj, d[i]*d[j])
+			}
+		}
+	}
+}
+
+func clearAll(grad []float64, curv *mat.SymDense) {
+	clear(grad)
+	if curv != nil {
+		curv.Zero()
+	}
+}
+
+// variances are v_i at the limits of the last evaluation and the spreads ψ.
+func (l *likelihood) variances(psi, dst []float64) []float64 {
+	if dst == nil {
+		dst = make([]float64, len(l.obs))
+	}
+	for i := range dst {
+		sd := l.lay.sdOf(i, psi)
+		dst[i] = l.stated(i) + float64(sd*sd)
+	}
+	return dst
+}

@@ -1,0 +1,281 @@
+package fit
+
+import (
+	"math"
+
+	"gonum.org/v1/gonum/mat"
+
+	"limsup/fit/leastsq"
+)
+
+// This file estimates the spreads ψ: standard deviations of the noise and of
+// pooled groups. Maximising the likelihood over θ and ψ together would take them
+// too small, as dividing a sum of squares by n instead of n − p does. They are
+// therefore taken where the likelihood with θ integrated out is largest, by
+// Laplace's method about the best θ,
+//
+//	A(ψ) = min_θ[−ln L(θ, ψ)] + ½ ln det H(θ, ψ),
+//
+// which for Gaussian rows and linear predictions is the restricted maximum
+// likelihood of H. D. Patterson and R. Thompson, Biometrika 58 (1971) 545, and for
+// pooled groups the scheme of M. J. Lindstrom and D. M. Bates, Biometrics 46
+// (1990) 673: the predictions are linearised at the current θ, ψ is found, θ is
+// found again, until neither moves. (Citations from memory.)
+
+// linearised is −ln L with every prediction replaced by its tangent at θ. It
+// calls no physics.
+type linearised struct {
+	l      *likelihood
+	theta  []float64
+	active []int // elements of θ that are free to move: not at a bound
+	r      []float64
+	a      []float64    // anchor residuals
+	da     [][3]float64 // and their slopes
+
+	// work space
+	delta, shifted, grad, variance, step []float64
+	curv                                 *mat.SymDense
+}
+
+func newLinearised(l *likelihood, theta []float64, active []int) (*linearised, error) {
+	if err := l.evaluate(theta); err != nil {
+		return nil, err
+	}
+	n, p := len(l.obs), len(theta)
+	z := &linearised{l: l, theta: theta, active: active, r: make([]float64, n),
+		delta: make([]float64, p), shifted: make([]float64, p), grad: make([]float64, p),
+		variance: make([]float64, n), step: make([]float64, len(active)), curv: mat.NewSymDense(max(p, 1), nil)}
+	for i := range z.r {
+		z.r[i] = l.residual(i)
+	}
+	for k := range l.anchors {
+		r, d, err := l.anchors[k].residual(l.cells)
+		if err != nil {
+			return nil, err
+		}
+		z.a, z.da = append(z.a, r), append(z.da, d)
+	}
+	return z, nil
+}
+
+// terms is −ln L at θ + δ.
+func (z *linearised) terms(psi []float64, derivatives bool) float64 {
+	l := z.l
+	var grad []float64
+	var curv *mat.SymDense
+	if derivatives {
+		grad, curv = z.grad, z.curv
+	}
+	clearAll(grad, curv)
+	value := 0.0
+	for i := range l.obs {
+		r := z.r[i]
+		idx, d := &l.lay.index[i], &l.limit[i].d
+		for a := range idx {
+			if at := idx[a]; at >= 0 {
+				r -= derivative(d, a) * z.delta[at]
+			}
+		}
+		d1 := l.density(i, r, z.variance[i])
+		value += d1.nll
+		if derivatives {
+			l.addRow(i, -d1.dr, d1.irr, grad, curv)
+		}
+	}
+	for i := range z.shifted {
+		z.shifted[i] = z.theta[i] + z.delta[i]
+	}
+	value += l.addPenalties(z.shifted, psi, grad, curv)
+	for k := range l.anchors {
+		r := z.a[k]
+		for i, at := range l.lay.cells[l.anchors[k].cell].index[2:5] {
+			if at >= 0 {
+				r += z.da[k][i] * z.delta[at]
+			}
+		}
+		value += 0.5 * r * r
+		if derivatives {
+			l.addAnchor(&l.anchors[k], r, z.da[k], grad, curv)
+		}
+	}
+	return value
+}
+
+// information is the active block of the curvature, factorised.
+func (z *linearised) information() (*mat.Cholesky, bool) {
+	k := len(z.active)
+	h := mat.NewSymDense(k, nil)
+	for a, i := range z.active {
+		for b := a; b < k; b++ {
+			h.SetSym(a, b, z.curv.At(i, z.active[b]))
+		}
+	}
+	var c mat.Cholesky
+	ok := c.Factorize(h)
+	return &c, ok
+}
+
+// adjusted is A(ψ); ok is false where the information is singular.
+func (z *linearised) adjusted(psi []float64) (value float64, ok bool) {
+	z.l.variances(psi, z.variance)
+	clear(z.delta)
+	if len(z.active) == 0 {
+		return z.terms(psi, false), true
+	}
+	// Newton's method; one step is exact for Gaussian rows, censored and Student rows
+	// take a few, halved where they do not descend.
+	value = z.terms(psi, true)
+	var chol *mat.Cholesky
+	for range 30 {
+		if chol, ok = z.information(); !ok {
+			return 0, false
+		}
+		g := mat.NewVecDense(len(z.active), nil)
+		for a, i := range z.active {
+			g.SetVec(a, z.grad[i])
+		}
+		s := mat.NewVecDense(len(z.active), z.step)
+		if err := chol.SolveVecTo(s, g); err != nil && !isCondition(err) {
+			return 0, false
+		}
+		decrease := mat.Dot(s, g)
+		if decrease < 1e-13*(1+math.Abs(value)) {
+			break
+		}
+		before := value
+		for scale := 1.0; scale > 1e-4; scale /= 2 {
+			for a, i := range z.active {
+				z.delta[i] -= scale * z.step[a]
+			}
+			if value = z.terms(psi, true); value <= before {
+				break
+			}
+			for a, i := range z.active {
+				z.delta[i] += scale * z.step[a]
+			}
+		}
+	}
+	return value + 0.5*chol.LogDet(), finite(value)
+}
+
+func isCondition(err error) bool {
+	_, ok := err.(mat.Condition)
+	return ok
+}
+
+// spreadStep is the relative step of the central differences of A in ψ: the
+// cube root of the rounding of A balances truncation against cancellation for
+// first, the fourth root for second differences.
+const spreadStep = 2e-4
+
+// estimate minimises A from psi and returns the new spreads, and their
+// covariance from the curvature of A (nil when it is not positive definite).
+func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covariance *mat.SymDense, err error) {
+	k := len(psi)
+	params := make([]leastsq.Param, k)
+	for i, f := range free {
+		params[i] = leastsq.Param{Name: f.Label(), Start: clamp(psi[i], f.Lower, f.Upper), Lower: f.Lower, Upper: f.Upper}
+	}
+	eval := func(x, grad []float64, curv *mat.SymDense) (float64, error) {
+		v, ok := z.adjusted(x)
+		if !ok {
+			return 0, errSingular
+		}
+		if grad == nil && curv == nil {
+			return v, nil
+		}
+		return v, z.differences(x, v, grad, curv)
+	}
+	res, err := leastsq.Minimize(leastsq.Objective{Params: params, Size: len(z.l.obs), Eval: eval}, leastsq.Settings{})
+	if err != nil {
+		return nil, nil, err
+	}
+	h := mat.NewSymDense(k, nil)
+	g := make([]float64, k)
+	if err := z.hessian(res.X, res.Value, g, h); err == nil {
+		var c mat.Cholesky
+		if c.Factorize(h) {
+			covariance = mat.NewSymDense(k, nil)
+			if err := c.InverseTo(covariance); err != nil && !isCondition(err) {
+				covariance = nil
+			}
+		}
+	}
+	return res.X, covariance, nil
+}
+
+// differences fills gradient and a positive curvature of A by central differences.
+func (z *linearised) differences(x []float64, v float64, grad []float64, curv *mat.SymDense) error {
+	k := len(x)
+	h := mat.NewSymDense(k, nil)
+	g := make([]float64, k)
+	if err := z.hessian(x, v, g, h); err != nil {
+		return err
+	}
+	if grad != nil {
+		copy(grad, g)
+	}
+	if curv == nil {
+		return nil
+	}
+	var c mat.Cholesky
+	if !c.Factorize(h) { // far from the minimum: keep the diagonal, positive
+		for i := range k {
+			for j := range i {
+				h.SetSym(i, j, 0)
+			}
+			h.SetSym(i, i, math.Abs(h.At(i, i))+1e-9)
+		}
+	}
+	curv.CopySym(h)
+	return nil
+}
+
+// hessian fills the gradient and the Hessian of A at x by central differences. A
+// is even in each spread, so steps may pass zero.
+func (z *linearised) hessian(x []float64, v float64, g []float64, h *mat.SymDense) error {
+	k := len(x)
+	step := make([]float64, k)
+	for i := range x {
+		step[i] = spreadStep * math.Max(math.Abs(x[i]), 1e-3)
+	}
+	at := func(i int, si float64, j int, sj float64) (float64, error) {
+		y := append([]float64(nil), x...)
+		y[i] += si * step[i]
+		if j >= 0 {
+			y[j] += sj * step[j]
+		}
+		for m := range y {
+			y[m] = math.Abs(y[m])
+		}
+		a, ok := z.adjusted(y)
+		if !ok {
+			return 0, errSingular
+		}
+		return a, nil
+	}
+	for i := range k {
+		up, err := at(i, 1, -1, 0)
+		if err != nil {
+			return err
+		}
+		down, err := at(i, -1, -1, 0)
+		if err != nil {
+			return err
+		}
+		g[i] = (up - down) / (2 * step[i])
+		h.SetSym(i, i, (up-2*v+down)/(step[i]*step[i]))
+		for j := range i {
+			var f [4]float64
+			for q, s := range [...][2]float64{{1, 1}, {1, -1}, {-1, 1}, {-1, -1}} {
+				if f[q], err = at(i, s[0], j, s[1]); err != nil {
+					return err
+				}
+			}
+			h.SetSym(i, j, (f[0]-f[1]-f[2]+f[3])/(4*step[i]*step[j]))
+		}
+	}
+	return nil
+}
+
+func clamp(x, lo, hi float64) float64 { return math.Min(math.Max(x, lo), hi) }
