@@ -30,6 +30,9 @@ type Target struct {
 // Threshold is the target J* given as log₁₀(J*/(m⁻³s⁻¹)).
 func Threshold(log10J float64) Target { return Target{LnJ: log10J * math.Ln10} }
 
+// Stated is the target J in m⁻³s⁻¹.
+func Stated(J float64) Target { return Target{LnJ: math.Log(J)} }
+
 // Heated is the target of a sample of volume V in m³ heated at β in K/s: half of
 // such samples have boiled where J = ln2·β·(dlnJ/dT)/V.
 func Heated(V, β float64) Target {
