@@ -107,7 +107,7 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 		var next float64
 		switch c {
 		case fine:
-			ψ, slope := f.psi(&p, t, p.total)
+			ψ, slope := f.psi(&p, t, false)
 			residual = p.lnJ() - f.wanted(&p, t)
 			if ψ >= 0 {
 				hi, spinodal = T, true
@@ -140,7 +140,7 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 				// The end of the bracket has not been proven to lie beyond the limit.
 				end, isSpinodal := f.hottest(P)
 				if c := f.evaluate(end, P, &p); c == fine {
-					if ψ, _ := f.psi(&p, t, p.total); ψ < 0 {
+					if ψ, _ := f.psi(&p, t, false); ψ < 0 {
 						return Limit{}, f.noLimit(P, t, end, isSpinodal)
 					}
 					hi = math.Min(hi, end)
@@ -207,10 +207,10 @@ func (f *Fluid) wanted(p *point, t Target) float64 {
 	return t.LnJ + math.Log(s)
 }
 
-// psi is ψ and its derivative along the direction in which total closes the
-// chain rule. The slow drift of a per-kelvin threshold is left out of the slope.
+// psi is ψ and its derivative with respect to T or, at given T, to P_l. The slow
+// drift of a per-kelvin threshold is left out of the slope.
 // A threshold above lnA, which no barrier can meet, gives ψ = −1 and no slope.
-func (f *Fluid) psi(p *point, t Target, total func(*partials) float64) (ψ, slope float64) {
+func (f *Fluid) psi(p *point, t Target, atT bool) (ψ, slope float64) {
 	L := p.lnA - f.wanted(p, t)
 	if !(L > 0) {
 		return -1, math.NaN()
@@ -224,7 +224,10 @@ func (f *Fluid) psi(p *point, t Target, total func(*partials) float64) (ψ, slop
 	}
 	d[inP] -= 1 / required
 	d[inT] += 0.5 * h / p.T
-	return h - 1, total(&d)
+	if atT {
+		return h - 1, d[inP]
+	}
+	return h - 1, p.total(&d)
 }
 
 // limitAt assembles the result at a converged state.
@@ -313,7 +316,6 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 	}
 	hi := ps
 	var p point
-	along := func(d *partials) float64 { return d[inP] }
 	proven := !isSpinodal
 	P := guess
 	if P == 0 || !(P > lo && P < hi) {
@@ -324,7 +326,7 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 		var next float64
 		switch c := f.evaluate(T, P, &p); c {
 		case fine:
-			ψ, slope := f.psi(&p, t, along)
+			ψ, slope := f.psi(&p, t, true)
 			residual = p.lnJ() - f.wanted(&p, t)
 			if ψ >= 0 {
 				lo, proven = P, true
@@ -348,7 +350,7 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 			if !proven {
 				end := lo + 1e-10*math.Abs(hi-lo)
 				if f.evaluate(T, end, &p) == fine {
-					if ψ, _ := f.psi(&p, t, along); ψ < 0 {
+					if ψ, _ := f.psi(&p, t, true); ψ < 0 {
 						e := &NoLimitError{Fluid: f.name, Given: T, AtT: true, Threshold: t.LnJ / math.Ln10, End: lo, Spinodal: true}
 						if p.excess > 0 {
 							e.Reached, e.Known = p.lnJ()/math.Ln10, true
