@@ -29,8 +29,8 @@ type Model struct {
 // NewModel applies an equation with a tuning to a fluid.
 //
 // Errors: *ParameterError for constants or factors that leave no vapour–liquid
-// critical point: Tc, Pc, factors ≤ 0, or an attraction a/T that does not fall
-// with temperature.
+// critical point: Tc, Pc ≤ 0, factors on a and b outside 0.01 to 100, or an
+// attraction a/T that does not fall with temperature.
 func NewModel(e Equation, s Substance, t Tuning) (Model, error) {
 	form, err := NewForm(e.D1, e.D2)
 	if err != nil {
@@ -40,14 +40,17 @@ func NewModel(e Equation, s Substance, t Tuning) (Model, error) {
 		return Model{}, &ParameterError{s.Name, e.Name, name, v, want}
 	}
 	for _, p := range [...]struct {
-		name  string
-		value float64
+		name          string
+		value, lo, hi float64
+		want          string
 	}{
-		{"critical temperature in K", s.CriticalT}, {"critical pressure in Pa", s.CriticalP},
-		{"attraction", t.Attraction}, {"covolume", t.Covolume},
+		{"critical temperature in K", s.CriticalT, 0, math.Inf(1), "> 0 and finite"},
+		{"critical pressure in Pa", s.CriticalP, 0, math.Inf(1), "> 0 and finite"},
+		{"attraction", t.Attraction, 0.01, 100, "between 0.01 and 100"},
+		{"covolume", t.Covolume, 0.01, 100, "between 0.01 and 100"},
 	} {
-		if !(p.value > 0 && p.value <= math.MaxFloat64) {
-			return bad(p.name, p.value, "> 0 and finite")
+		if !(p.value > p.lo && p.value < p.hi) {
+			return bad(p.name, p.value, p.want)
 		}
 	}
 	if !(math.Abs(s.Acentric) < 5) {
