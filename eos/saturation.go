@@ -93,7 +93,9 @@ func (f *Form) Saturate(tau float64) (c Coexistence, ok bool) {
 		c.Gap = f.LnFugacity(xl, tau) - f.LnFugacity(xv, tau)
 		c.DP = (f.AttractionIntegral(xv) - f.AttractionIntegral(xl)) / (xv - xl)
 		c.DXl = (c.DP + 1/f.q(xl)) / f.PressureSlope(xl, tau)
-		c.DXv = (c.DP + 1/f.q(xv)) / f.PressureSlope(xv, tau)
+		// through the density 1/x_v, since x_v² may overflow
+		_, dv := f.pressureOfDensity(1/xv, tau)
+		c.DXv = -(c.DP*xv + xv/f.q(xv)) / dv * xv
 	}
 	return c, ok
 }
