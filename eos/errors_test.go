@@ -147,6 +147,8 @@ func TestParameterErrors(t *testing.T) {
 		row{"a ∝ T²", "berthelot", good, Tuning{1, 1, -2}, "slope"},
 		row{"a ∝ T", "redlich-kwong", good, Tuning{1, 1, -2}, "slope"},
 		row{"m < −1", "soave", good, Tuning{1, 1, -1.5}, "slope"},
+		// n → −1: a/T hardly falls, and its critical value lies at no temperature.
+		row{"a ∝ T^0.999", "van-der-waals", good, Tuning{1.3, 0.7, -0.999}, "implied critical temperature in K"},
 		// m = −0.94: a/T falls, but only to m² of its value at Tc·attraction/covolume.
 		row{"no critical τ", "soave", with(func(s *Substance) { s.Acentric = 0.3 }), Tuning{1.3, 0.7, -1}, "slope"},
 	)
@@ -174,7 +176,7 @@ func TestParameterErrors(t *testing.T) {
 		if !errors.As(err, &p) {
 			t.Errorf("δ = %v: %v", d, err)
 		}
-		if _, err = NewModel(Equation{Name: "mine", D1: d[0], D2: d[1], Alpha: AlphaPower}, good, Tuning{1, 1, 0}); !errors.As(err, &p) {
+		if _, err = NewModel(Equation{Name: "mine", D1: d[0], D2: d[1], Alpha: AlphaPower}, good, Tuning{1, 1, 0}); !errors.As(err, &p) || p.Fluid != good.Name || p.Equation != "mine" {
 			t.Errorf("model with δ = %v: %v", d, err)
 		}
 	}

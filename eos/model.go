@@ -34,6 +34,9 @@ type Model struct {
 func NewModel(e Equation, s Substance, t Tuning) (Model, error) {
 	form, err := NewForm(e.D1, e.D2)
 	if err != nil {
+		if p, ok := err.(*ParameterError); ok {
+			p.Fluid, p.Equation = s.Name, e.Name
+		}
 		return Model{}, err
 	}
 	bad := func(name string, v float64, want string) (Model, error) {
