@@ -1,6 +1,7 @@
 package eos
 
 import (
+	"errors"
 	"fmt"
 	"math"
 	"testing"
@@ -286,6 +287,48 @@ func TestPhaseOfFugacity(t *testing.T) {
 			if x, ok := m.LiquidOfFugacity(m.Form.LnFugacity(xl, tau)-1e-6, tau); ok {
 				t.Errorf("%s Tr=%g: liquid %g below its spinodal", m.Equation, tr, x)
 			}
+		}
+	}
+}
+
+// Within rounding of the critical point there is an answer in order, or an error
+// that says so. The volumes differ from v_c by a multiple of √(1−Tr), below 6 for
+// these models (2 for van der Waals), and by the cube root of rounding, since P is
+// flat to third order. Nearer than 1e-6 to Pc rounding of F decides: T is then
+// known to 1e-7 (measured) and no better.
+func TestNextToCriticalPoint(t *testing.T) {
+	for _, m := range tunedModels(t) {
+		answers := 0
+		for d := 1e-4; d > 2e-16; d /= 1.7 {
+			T := m.Tc * (1 - d)
+			var c *ConvergenceError
+			s, err := m.Saturation(T)
+			switch {
+			case errors.As(err, &c):
+			case err != nil:
+				t.Errorf("%s 1−Tr=%g: %v", m.Equation, d, err)
+			case !(s.Vl < m.XC*m.B && m.XC*m.B < s.Vv && s.P < m.Pc*(1+1e-12) && s.Vv < m.XC*m.B*(1+6*math.Sqrt(d)+2e-5)):
+				t.Errorf("%s 1−Tr=%g: %+v, vc %g, Pc %g", m.Equation, d, s, m.XC*m.B, m.Pc)
+			default:
+				answers++
+			}
+			P, known := m.Pc*(1-d), 1e-11
+			if d < 1e-6 {
+				known = 1e-7
+			}
+			s, err = m.SaturationTemperature(P)
+			if err != nil && !errors.As(err, &c) || err == nil && !(math.Abs(s.T/m.Tc-1) < d+known && s.T < m.Tc && deviation(s.P, P) < known) {
+				t.Errorf("%s 1−Pr=%g: %+v, %v", m.Equation, d, s, err)
+			}
+			for name, search := range map[string]func(float64) (SpinodalState, error){"liquid": m.LiquidSpinodalTemperature, "vapour": m.VapourSpinodalTemperature} {
+				st, err := search(P)
+				if err != nil && !errors.As(err, &c) || err == nil && !(math.Abs(st.T/m.Tc-1) < d+4*eps) {
+					t.Errorf("%s 1−Pr=%g: %s spinodal %+v, %v", m.Equation, d, name, st, err)
+				}
+			}
+		}
+		if answers < 10 { // down to 1−Tr = 1e-6 at least
+			t.Errorf("%s: only %d answers", m.Equation, answers)
 		}
 	}
 }
