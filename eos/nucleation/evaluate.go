@@ -40,7 +40,7 @@ const (
 	noLiquid             // beyond the liquid spinodal
 	noVapour             // no vapour in equilibrium with so dense a liquid
 	noTension            // σ∞ not known or not positive
-	tolmanTooLarge       // 2δ/r ≥ 1: no embryo of positive radius
+	tolmanTooLarge       // δΔP ≥ σ∞: no embryo of positive tension and radius
 	noSaturation
 )
 
@@ -165,8 +165,11 @@ func (f *Fluid) evaluate(T, P float64, p *point) cause {
 	for k := range p.dlnA {
 		p.dlnA[k] = dlnN[k] + 0.5*(p.dsigma[k]/p.sigma-dlnB[k])
 	}
-	if f.c.Kinetics == Stepwise && p.excess > 0 && !p.held {
-		ln, dW, dx := stepwiseFactor(p.barrier, p.ratio)
+	if f.c.Kinetics == Stepwise && p.excess > 0 {
+		ln, dW, dx := stepwiseFactor(p.barrier, math.Max(p.ratio, 3*minimumB-2))
+		if p.held { // with B at its floor the factor stays where it was, so that J has no step
+			dx = 0
+		}
 		p.lnA += ln
 		for k := range p.dlnA {
 			p.dlnA[k] += dW*p.dbarrier[k] + dx*dratio[k]

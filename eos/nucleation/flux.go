@@ -58,7 +58,8 @@ type Flux struct {
 	Gradient Gradient // ∂lnJ/∂parameter
 	Barrier  float64  // W = ΔG*/(kT)
 	// Held is set when the liquid is under so much tension that the kinetic
-	// factor of the mechanical picture would vanish; it is then held at 0.1.
+	// factor of the mechanical picture would vanish; it is then held at 0.1, and the
+	// stepwise factor at its value there.
 	Held bool
 }
 
