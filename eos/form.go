@@ -71,7 +71,7 @@ func (f *Form) Pressure(x, tau float64) float64 {
 // fluctuations of density where it is negative.
 func (f *Form) PressureSlope(x, tau float64) float64 {
 	q := f.q(x)
-	return tau*(2*x+f.s)/(q*q) - 1/((x-1)*(x-1))
+	return tau/q*((2*x+f.s)/q) - 1/((x-1)*(x-1)) // quotients first: see PressureCurvature
 }
 
 // PressureCurvature is ∂²p/∂x² at constant τ.
@@ -102,7 +102,7 @@ func (f *Form) fugacityAndSlope(x, tau float64) (lnf, slope float64) {
 	y := 1 / (x - 1)
 	iq := 1 / f.q(x)
 	lnf = y - math.Log(x-1) - tau*(x*iq+f.AttractionIntegral(x))
-	slope = x * (tau*(2*x+f.s)*iq*iq - y*y)
+	slope = x * (tau*iq*((2*x+f.s)*iq) - y*y)
 	return lnf, slope
 }
 
