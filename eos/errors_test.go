@@ -86,6 +86,26 @@ func TestDomainErrors(t *testing.T) {
 	}
 }
 
+// Soave's α falls to zero at √Tr = 1 + 1/m and would rise again beyond; there
+// a/T no longer falls, and the model says so instead of going on.
+func TestZeroOfAlpha(t *testing.T) {
+	e := Equation{Name: "m = 1", D1: 1, Alpha: AlphaSoave, Slope: [3]float64{1, 0, 0}}
+	m, err := NewModel(e, pentane, e.Untuned())
+	if err != nil {
+		t.Fatal(err)
+	}
+	zero := 4 * pentane.CriticalT
+	if p, err := m.Pressure(zero*(1-1e-12), 1e-3); err != nil || !(p > 0) {
+		t.Errorf("just below: %g, %v", p, err)
+	}
+	for _, T := range []float64{zero, 1.5 * zero} {
+		var d *DomainError
+		if _, _, _, err := m.PressureDerivatives(T, 1e-3); !errors.As(err, &d) || d.Hi != zero {
+			t.Errorf("at %g K: %v, want a *DomainError up to %g K", T, err, zero)
+		}
+	}
+}
+
 func TestPhaseErrors(t *testing.T) {
 	m := untuned(t, "peng-robinson", pentane)
 	l, v, err := m.Spinodal(400)

@@ -213,19 +213,28 @@ func TestRootsAgainstBisection(t *testing.T) {
 		// Single phases at random pressures and fugacities, metastable ones included.
 		part := rapid.Float64Range(1e-3, 0.999).Draw(t, "part")
 		pl, pv := ref.p(sl), ref.p(sv)
-		for name, c := range map[string]struct {
+		for _, c := range []struct {
+			name    string
 			p, want float64
 			get     func(p, tau, guess float64) (float64, bool)
 		}{
-			"stretched liquid":  {pl + part*(pv-pl), ref.liquid(pl+part*(pv-pl), sl), m.Form.Liquid},
-			"compressed liquid": {pv + part*100, ref.liquid(pv+part*100, sl), m.Form.Liquid},
-			"vapour":            {part * pv, ref.vapour(part*pv, sv), m.Form.Vapour},
+			{"stretched liquid", pl + part*(pv-pl), ref.liquid(pl+part*(pv-pl), sl), m.Form.Liquid},
+			{"compressed liquid", pv + part*100, ref.liquid(pv+part*100, sl), m.Form.Liquid},
+			{"vapour", part * pv, ref.vapour(part*pv, sv), m.Form.Vapour},
 		} {
-			x, ok := c.get(c.p, tau, 0)
+			// Any guess on the phase's side of x_c will do, also an unstable volume.
+			guess := 1 + (m.XC-1)*rapid.Float64Range(1e-3, 0.9999).Draw(t, "guess of "+c.name)
+			if c.name == "vapour" {
+				guess = m.XC * (m.XC - 1) / (guess - 1)
+			}
+			x, ok := c.get(c.p, tau, guess)
+			if x0, ok0 := c.get(c.p, tau, 0); !ok0 || deviation(x0-1, x-1) > 1e-6 {
+				t.Fatalf("%s: %g without a guess, %g with the guess %g", c.name, x0, x, guess)
+			}
 			terms := 1/(c.want-1) + tau/m.q(c.want)
 			tol := 4*eps*c.want + 4*eps*terms*c.want/(c.want-1)/math.Abs(m.PressureSlope(c.want, tau))
 			if !ok || !(math.Abs(x-c.want) <= tol) {
-				t.Fatalf("%s at p = %g: x = %.17g %v, bisection %.17g ± %.1e", name, c.p, x, ok, c.want, tol)
+				t.Fatalf("%s at p = %g: x = %.17g %v, bisection %.17g ± %.1e", c.name, c.p, x, ok, c.want, tol)
 			}
 		}
 		// The vapour over a metastable liquid between its spinodal and saturation.

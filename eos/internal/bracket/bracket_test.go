@@ -46,6 +46,15 @@ func TestNewtonRoots(t *testing.T) {
 		{"triple root", func(x float64) (float64, float64) { y := x - 0.3; return y * y * y, 3 * y * y }, 0, 1, 0.9, true, 0.3, 1e-8},
 		// A root 1e-12 from a pole at the lower end keeps its relative distance.
 		{"next to a pole", func(x float64) (float64, float64) { return 1e12 - 1/x, 1 / (x * x) }, 0, 1, 0.5, true, 1e-12, 4e-16},
+		// Near a pole at 1 the scale is the distance to it, not x: else the search would
+		// stop 1e-12 short.
+		{"next to a pole at 1", func(x float64) (float64, float64) { return 1e6 - 1/(x-1), 1 / ((x - 1) * (x - 1)) }, 1, 2, 1.5, true, 1 + 1e-6, 4e-16},
+		// Newton's steps shrink by 12/13 only; bisections in between bring it home. The
+		// last step of 1e-9 of the distance is 1/13 of what is left.
+		{"root of order 13", func(x float64) (float64, float64) {
+			y := x - 0.3
+			return math.Copysign(math.Pow(math.Abs(y), 13), y), 13 * math.Pow(math.Abs(y), 12)
+		}, 0, 1, 0.9, true, 0.3, 5e-8},
 		{"poles at both ends", func(x float64) (float64, float64) {
 			return 1/(1-x) - 1/x, 1/((1-x)*(1-x)) + 1/(x*x)
 		}, 0, 1, 1e-9, true, 0.5, 4e-16},
