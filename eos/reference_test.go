@@ -62,7 +62,8 @@ func TestCriticalPoint(t *testing.T) {
 // The spinodal of the liquid at zero pressure, as a fraction of Tc. With x₀ = 1 +
 // √((1+δ₁)(1+δ₂)) and τ₀ = q(x₀)/(x₀−1):
 // van der Waals x₀ = 2, τ₀ = 4, so Tr = τ_c/τ₀ = 27/32; Berthelot (Tr²) √(27/32);
-// Redlich–Kwong x₀ = 1+√2, Tr = (τ_c/τ₀)^(2/3) with τ₀ = (1+√2)²√2 /... = 3+2√2.
+// Redlich–Kwong x₀ = 1+√2, Tr = (τ_c/τ₀)^(2/3) with
+// τ₀ = (1+√2)(2+√2)/√2 = 3+2√2.
 func TestZeroPressureSpinodal(t *testing.T) {
 	tauRK := 1 / (3 * (math.Cbrt(2) - 1) * (math.Cbrt(2) - 1)) // Ω_a/Ω_b
 	tests := []struct {
@@ -197,7 +198,9 @@ func TestSeparateImplementation(t *testing.T) {
 // fitted α(Tr, ω) give vapour pressures within a few percent, van der Waals is
 // out by a factor at low temperature, Redlich–Kwong in between.
 //
-// The bounds are 1.2 times the deviations measured here.
+// Measured here: soave 1.4, 1.7, 1.9 % at most (propane, n-pentane, n-octane),
+// peng-robinson 0.7, 0.7, 1.7 %, redlich-kwong 31, 93, 246 %, van-der-waals by
+// factors of 5.5, 8.2 and 14.7. The bounds are those of practice: 3 %, and a factor 3.
 func TestVapourPressureOfAlkanes(t *testing.T) {
 	subs := substances(t)
 	worst := map[string]map[string]float64{}
@@ -226,7 +229,7 @@ func TestVapourPressureOfAlkanes(t *testing.T) {
 				t.Errorf("%s of %s: vapour pressure off by %.3g, want below 0.03", e, fluid, worst[e][fluid])
 			}
 		}
-		if rk, w := worst["redlich-kwong"][fluid], worst["van-der-waals"][fluid]; !(w > 2 && w > 3*rk && rk > 0.1) {
+		if rk, w := worst["redlich-kwong"][fluid], worst["van-der-waals"][fluid]; !(w > 2 && w > 3*rk && rk > 0.1) { // off by 2 is a factor of 3
 			t.Errorf("%s: van der Waals off by %.3g, Redlich–Kwong by %.3g, want above 2 and between", fluid, w, rk)
 		}
 	}

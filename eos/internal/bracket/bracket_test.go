@@ -46,9 +46,6 @@ func TestNewtonRoots(t *testing.T) {
 		{"triple root", func(x float64) (float64, float64) { y := x - 0.3; return y * y * y, 3 * y * y }, 0, 1, 0.9, true, 0.3, 1e-8},
 		// A root 1e-12 from a pole at the lower end keeps its relative distance.
 		{"next to a pole", func(x float64) (float64, float64) { return 1e12 - 1/x, 1 / (x * x) }, 0, 1, 0.5, true, 1e-12, 4e-16},
-		// Near a pole at 1 the scale is the distance to it, not x: else the search would
-		// stop 1e-12 short.
-		{"next to a pole at 1", func(x float64) (float64, float64) { return 1e6 - 1/(x-1), 1 / ((x - 1) * (x - 1)) }, 1, 2, 1.5, true, 1 + 1e-6, 4e-16},
 		// Newton's steps shrink by 12/13 only; bisections in between bring it home. The
 		// last step of 1e-9 of the distance is 1/13 of what is left.
 		{"root of order 13", func(x float64) (float64, float64) {
@@ -83,6 +80,18 @@ func TestNewtonRoots(t *testing.T) {
 				t.Errorf("%d calls in %d steps", calls, o.Iterations)
 			}
 		})
+	}
+}
+
+// Near a pole at 1 the scale is the distance to it, not x: else some of these
+// searches would stop up to 1e-9 of x short of the root.
+func TestNewtonScale(t *testing.T) {
+	for d := 1e-2; d > 1e-9; d /= 1.3 {
+		o := Newton(func(x float64) (float64, float64) { return 1/d - 1/(x-1), 1 / ((x - 1) * (x - 1)) }, 1, 2, 1.5, true, 1e-9)
+		// rounding of x, and that of f over its slope: 2ε·(1/d)·d²
+		if !o.Converged || math.Abs(o.X-(1+d)) > 4.5e-16+1e-15*d {
+			t.Errorf("root 1 + %g: %+v, off by %g", d, o, o.X-(1+d))
+		}
 	}
 }
 
