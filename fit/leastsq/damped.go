@@ -1,0 +1,346 @@
+package leastsq
+
+import (
+	"math"
+
+	"gonum.org/v1/gonum/optimize"
+)
+
+// This file is the damped search shared by least squares and likelihoods: an
+// optimize.Method that takes steps minimising
+//
+//	m(p) + ½λ‖D p‖²
+//
+// with m the quadratic model of the objective at θ, D a diagonal that makes the
+// step independent of the units of θ, and λ the damping. λ follows the gain
+// ratio ρ, the decrease reached over the decrease that m promised (the rule of
+// H. B. Nielsen, Damping parameter in Marquardt's method, IMM-REP-1999-05, Technical
+// University of Denmark, 1999; from memory). Bounds are held by an active set: a
+// parameter at a bound that the gradient presses against it is left out of the
+// step, one that the step would carry over its bound is stopped there and the
+// step of the others is solved again.
+
+// local is the quadratic model of an objective around its current point.
+type local interface {
+	// value evaluates a trial point, +Inf where that fails.
+	value(theta []float64) float64
+	// derive fills g with the gradient at the trial point evaluated last.
+	derive(g, theta []float64)
+	// adopt makes that trial point the current point; false if its derivatives
+	// failed. d is updated to the scale D.
+	adopt(d []float64) bool
+	// solve fills p[free] with the minimiser of m(p)+½λ‖Dp‖² for the given other
+	// entries of p; false where the system cannot be solved.
+	solve(p []float64, free []int, λ float64) bool
+	// predicted is m(0) − m(p).
+	predicted(p []float64) float64
+	// decrease is the value at the current less that at the trial point.
+	decrease() float64
+	// unit is the value that corresponds to ½ a squared standard error.
+	unit() float64
+	// noise is the rounding of decrease.
+	noise() float64
+	// floor is the smallest damping worth having: below it rounding of the
+	// derivatives exceeds the damping.
+	floor() float64
+}
+
+// ending says why a damped search ended.
+type ending int
+
+const (
+	running     ending = iota
+	optimum            // distance below tolerance
+	exact              // the value is zero
+	rounding           // no smaller value within rounding
+	blocked            // no acceptable step, though the model promises one
+	unevaluated        // the start has no value or derivative
+)
+
+// damped implements optimize.Method and optimize.Statuser.
+type damped struct {
+	m         local
+	b         *box
+	tolerance float64
+
+	x, p, d, g []float64
+	free, keep []int
+	end        ending
+	distance   float64 // standard errors to go at the last point
+	relative   float64 // largest undamped step relative to the parameter sizes
+	accepted   int
+}
+
+var (
+	_ optimize.Method   = (*damped)(nil)
+	_ optimize.Statuser = (*damped)(nil)
+)
+
+func newDamped(m local, b *box, tolerance float64) *damped {
+	n := len(b.start)
+	return &damped{m: m, b: b, tolerance: tolerance,
+		x: make([]float64, n), p: make([]float64, n), d: make([]float64, n), g: make([]float64, n),
+		free: make([]int, 0, n), keep: make([]int, 0, n)}
+}
+
+// Uses asks for the gradient; the curvature stays inside the model.
+func (d *damped) Uses(has optimize.Available) (optimize.Available, error) {
+	if !has.Grad {
+		return optimize.Available{}, optimize.ErrMissingGrad
+	}
+	return optimize.Available{Grad: true}, nil
+}
+
+// Init asks for one task: the search is sequential.
+func (d *damped) Init(dim, tasks int) int { return 1 }
+
+// Status translates the ending.
+func (d *damped) Status() (optimize.Status, error) {
+	switch d.end {
+	case optimum:
+		return optimize.GradientThreshold, nil
+	case exact:
+		return optimize.FunctionThreshold, nil
+	case rounding:
+		return optimize.StepConvergence, nil
+	case blocked, unevaluated:
+		return optimize.Failure, nil
+	}
+	return optimize.NotTerminated, nil
+}
+
+// Run is the search; see optimize.Method for the protocol of the channels.
+func (d *damped) Run(operation chan<- optimize.Task, result <-chan optimize.Task, tasks []optimize.Task) {
+	task := tasks[0]
+	ask := func(op optimize.Operation) bool {
+		task.Op = op
+		operation <- task
+		task = <-result
+		return task.Op != optimize.PostIteration
+	}
+	if d.search(&task, ask) {
+		task.Op = optimize.MethodDone
+		operation <- task
+	}
+	for range result {
+	}
+	close(operation)
+}
+
+const (
+	firstDamping = 1e-3
+	// maxRejections: λ grows by 2^(k(k+1)/2) in k rejections; 30 exceed the range
+	// of numbers.
+	maxRejections = 30
+	// maxPolish steps are taken on trust of the gradient, where the decrease
+	// promised is below the rounding of the value.
+	maxPolish = 3
+)
+
+// search returns true when it ended by itself, false when it was told to stop.
+func (d *damped) search(task *optimize.Task, ask func(optimize.Operation) bool) bool {
+	copy(d.x, task.X)
+	if !ask(optimize.FuncEvaluation | optimize.GradEvaluation) {
+		return false
+	}
+	if !finite(task.F) || !d.m.adopt(d.d) {
+		d.end = unevaluated
+		return true
+	}
+	copy(d.g, task.Gradient)
+	if !ask(optimize.MajorIteration) {
+		return false
+	}
+	λ, ν := firstDamping, 2.0
+	polished := 0
+	for {
+		d.activate()
+		if d.converged(task.F) {
+			return true
+		}
+		for rejected := 0; ; rejected++ {
+			pred, ok := d.step(λ)
+			moved := ok && d.trial(task.X)
+			if !moved && ok || rejected == maxRejections {
+				d.stalled()
+				return true
+			}
+			ρ := math.Inf(-1)
+			if ok && pred > 0 {
+				if !ask(optimize.FuncEvaluation) {
+					return false
+				}
+				dec := d.m.decrease()
+				if finite(task.F) && finite(dec) {
+					ρ = dec / pred
+					if noise := d.m.noise(); pred <= noise && math.Abs(dec) <= noise && polished < maxPolish {
+						polished++
+						ρ = 1
+					}
+				}
+			}
+			if ρ > 1e-4 && ask(optimize.GradEvaluation) {
+				if d.m.adopt(d.d) {
+					copy(d.x, task.X)
+					copy(d.g, task.Gradient)
+					d.accepted++
+					λ = math.Max(λ*math.Max(1.0/3, 1-math.Pow(2*ρ-1, 3)), d.m.floor())
+					ν = 2
+					if !ask(optimize.MajorIteration) {
+						return false
+					}
+					break
+				}
+			} else if ρ > 1e-4 {
+				return false
+			}
+			λ *= ν
+			ν *= 2
+		}
+	}
+}
+
+// activate lists the parameters that are free to move.
+func (d *damped) activate() {
+	d.free = d.free[:0]
+	for i, x := range d.x {
+		switch {
+		case d.b.lower[i] == d.b.upper[i]:
+		case x <= d.b.lower[i] && d.g[i] > 0:
+		case x >= d.b.upper[i] && d.g[i] < 0:
+		default:
+			d.free = append(d.free, i)
+		}
+	}
+}
+
+// converged measures the distance to the optimum by the step damped only at the
+// rounding of the derivatives.
+func (d *damped) converged(f float64) bool {
+	d.distance, d.relative = 0, 0
+	if len(d.free) == 0 {
+		d.end = optimum
+		return true
+	}
+	solved := false
+	for λ := d.m.floor(); !solved && λ < firstDamping; λ *= 100 {
+		clear(d.p)
+		solved = d.m.solve(d.p, d.free, λ) && allFinite(d.p)
+	}
+	if !solved {
+		d.distance, d.relative = math.MaxFloat64, math.MaxFloat64
+		return false
+	}
+	if unit := d.m.unit(); unit > 0 {
+		d.distance = math.Sqrt(math.Max(0, d.m.predicted(d.p)) / unit)
+	} else {
+		d.end = exact
+		return true
+	}
+	for _, i := range d.free {
+		d.relative = math.Max(d.relative, math.Abs(d.p[i])/d.b.size(i, d.x[i]))
+	}
+	if d.distance <= d.tolerance {
+		d.end = optimum
+		return true
+	}
+	return false
+}
+
+// stalled judges a point from which no step lowers the value: an optimum to
+// rounding when a thousandth of a standard error or a millionth of the
+// parameters' size is all that is left to go.
+func (d *damped) stalled() {
+	if d.distance <= 1e-3 || d.relative <= 1e-6 {
+		d.end = rounding
+		return
+	}
+	d.end = blocked
+}
+
+// step fills p with the damped step that stays between the bounds and returns
+// the decrease that the model promises.
+func (d *damped) step(λ float64) (float64, bool) {
+	clear(d.p)
+	free := append(d.keep[:0], d.free...)
+	for len(free) > 0 {
+		if !d.m.solve(d.p, free, λ) || !allFinite(d.p) {
+			return 0, false
+		}
+		inside := free[:0]
+		for _, i := range free {
+			switch t := d.x[i] + d.p[i]; {
+			case t < d.b.lower[i]:
+				d.p[i] = d.b.lower[i] - d.x[i]
+			case t > d.b.upper[i]:
+				d.p[i] = d.b.upper[i] - d.x[i]
+			default:
+				inside = append(inside, i)
+			}
+		}
+		if len(inside) == len(free) {
+			break
+		}
+		free = inside
+	}
+	if pred := d.m.predicted(d.p); pred > 0 {
+		return pred, true
+	}
+	return d.shortened(λ)
+}
+
+// shortened is the step of all free parameters cut where the first reaches its
+// bound: a descent direction, since the model is convex.
+func (d *damped) shortened(λ float64) (float64, bool) {
+	clear(d.p)
+	free := append(d.keep[:0], d.free...)
+	for len(free) > 0 {
+		if !d.m.solve(d.p, free, λ) || !allFinite(d.p) {
+			return 0, false
+		}
+		t := 1.0
+		inside := free[:0]
+		for _, i := range free {
+			room := d.b.upper[i] - d.x[i]
+			if d.p[i] < 0 {
+				room = d.x[i] - d.b.lower[i]
+			}
+			switch a := math.Abs(d.p[i]); {
+			case a > 0 && room == 0:
+				d.p[i] = 0
+				continue
+			case a > room:
+				t = math.Min(t, room/a)
+			}
+			inside = append(inside, i)
+		}
+		if len(inside) == len(free) {
+			for _, i := range free {
+				d.p[i] *= t
+			}
+			break
+		}
+		free = inside
+	}
+	return d.m.predicted(d.p), true
+}
+
+// trial puts x+p into dst, between the bounds to the last bit, and tells
+// whether that differs from x.
+func (d *damped) trial(dst []float64) bool {
+	moved := false
+	for i, x := range d.x {
+		t := x + d.p[i]
+		switch {
+		case d.p[i] == 0:
+			t = x
+		case t <= d.b.lower[i] || d.p[i] == d.b.lower[i]-x:
+			t = d.b.lower[i]
+		case t >= d.b.upper[i] || d.p[i] == d.b.upper[i]-x:
+			t = d.b.upper[i]
+		}
+		dst[i] = t
+		moved = moved || t != x
+	}
+	return moved
+}
