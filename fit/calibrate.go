@@ -183,7 +183,7 @@ func enough(l *layout, d *Data, p *Plan) error {
 func (c *Calibration) alternate(lik *likelihood) (covPsi *mat.SymDense, err error) {
 	variance := make([]float64, len(lik.obs))
 	c.Converged, c.Usable = true, true
-	settings := leastsq.Settings{Starts: c.Plan.Restarts, Seed: c.Plan.Seed}
+	settings := leastsq.Settings{Starts: c.Plan.Restarts + 1, Seed: c.Plan.Seed}
 	if err := lik.evaluate(c.theta); err != nil {
 		return nil, &ConvergenceError{c.Plan.Variant.Name(), "the start values have no prediction: " + err.Error(), err}
 	}

@@ -280,3 +280,10 @@ func (ph *Physics) limit(P float64, t nucleation.Target, own bool, guess float64
 func (o *Observation) Query() Query {
 	return Query{Record: o.Record, Pressure: o.Pressure, Method: o.Method, Batch: o.Batch, Target: o.Target, OwnFlux: o.OwnFlux}
 }
+
+// Limit is the limit at P in Pa at the model's threshold.
+//
+// Errors: those of nucleation.KineticLimit, or of the spinodal.
+func (ph *Physics) Limit(P float64) (nucleation.Limit, error) {
+	return ph.Fluid.KineticLimit(P, nucleation.Threshold(ph.Threshold), 0)
+}

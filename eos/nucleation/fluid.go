@@ -122,7 +122,7 @@ func New(c Config) (*Fluid, error) {
 	f.tuned, _ = c.Tension.(tunedTension)
 	f.lnMass = 0.5 * math.Log(2*eos.Avogadro/(math.Pi*c.MolarMass))
 	f.prefactor = math.Ln10 * c.Prefactor
-	f.tlo, f.thi = eos.MinTr*c.Model.Tc, c.Model.Tc
+	f.tlo, f.thi = c.Model.MinT, c.Model.Tc
 	if f.corr {
 		f.tlo, f.thi = c.Correlations.Range()
 	}

@@ -1,0 +1,20 @@
+// Command limsup tunes superheat models to measured superheat limits, says how
+// good the result is, and predicts with it. See README.md, or run limsup help.
+package main
+
+import (
+	"context"
+	"fmt"
+	"os"
+	"os/signal"
+)
+
+func main() {
+	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt)
+	defer stop()
+	err := run(ctx, os.Stdout, os.Stderr, os.Args)
+	if err != nil {
+		fmt.Fprintln(os.Stderr, "limsup: "+describe(err))
+	}
+	os.Exit(status(err))
+}

@@ -1,0 +1,166 @@
+package main
+
+import (
+	"fmt"
+	"strconv"
+	"strings"
+
+	"github.com/urfave/cli/v2"
+
+	"limsup/data/quantity"
+	"limsup/fit"
+)
+
+// tuneFlags say what a calibration frees, fixes and knows beforehand.
+func tuneFlags() []cli.Flag {
+	return []cli.Flag{
+		&cli.StringSliceFlag{Name: "tune", Usage: "free a parameter, `NAME`, NAME/fluid, NAME/method or NAME/batch, the last three optionally with /pooled (repeatable; default: threshold, or prefactor where every row has its own flux). Names: threshold, prefactor, attraction, covolume, slope, surface-tension, tolman, offset, spread"},
+		&cli.StringSliceFlag{Name: "fix", Usage: "hold a parameter, `NAME=VALUE`, e.g. spread=0 (repeatable)"},
+		&cli.StringSliceFlag{Name: "start", Usage: "start value, `NAME=VALUE` or NAME[GROUP]=VALUE (repeatable)"},
+		&cli.StringSliceFlag{Name: "bounds", Usage: "bounds of a parameter, `NAME=LOW..HIGH` (repeatable)"},
+		&cli.StringSliceFlag{Name: "prior", Usage: "normal prior, `NAME=MEAN+-SD` or NAME[GROUP]=MEAN+-SD (repeatable)"},
+		&cli.StringSliceFlag{Name: "anchor", Usage: "hold the equation to the fluid's own correlation, `PROPERTY=U` with U its relative standard uncertainty, e.g. vapour-pressure=1% or liquid-density=2% (repeatable)"},
+		&cli.StringFlag{Name: "noise", Usage: "`DISTRIBUTION` of the residuals: gaussian, student or student=DEGREES, survival (default: gaussian)"},
+		&cli.IntFlag{Name: "restarts", Usage: "`NUMBER` of further starts of the search, spread over the bounds"},
+	}
+}
+
+// planFromFlags reads the plan of a calibration. Commands without tuneFlags get
+// the default plan of their variant.
+func planFromFlags(c *cli.Context) (fit.Plan, error) {
+	var p fit.Plan
+	var err error
+	if p.Variant, err = variantFromFlags(c); err != nil {
+		return p, err
+	}
+	for _, s := range c.StringSlice("tune") {
+		t, err := fit.ParseTerm(s)
+		if err != nil {
+			return p, err
+		}
+		p.Terms = append(p.Terms, t)
+	}
+	set, err := settings(c, "set")
+	if err != nil {
+		return p, err
+	}
+	for _, s := range set {
+		// A set parameter that is tuned starts there; another one stays there.
+		if tuned(p.Terms, s.Name) {
+			p.Starts = append(p.Starts, s)
+		} else {
+			p.Fixed = append(p.Fixed, s)
+		}
+	}
+	fixed, err := settings(c, "fix")
+	if err != nil {
+		return p, err
+	}
+	p.Fixed = append(p.Fixed, fixed...)
+	starts, err := settings(c, "start")
+	if err != nil {
+		return p, err
+	}
+	p.Starts = append(p.Starts, starts...)
+	for _, s := range c.StringSlice("bounds") {
+		b, err := parseBound(s)
+		if err != nil {
+			return p, err
+		}
+		p.Bounds = append(p.Bounds, b)
+	}
+	for _, s := range c.StringSlice("prior") {
+		r, err := parsePrior(s)
+		if err != nil {
+			return p, err
+		}
+		p.Priors = append(p.Priors, r)
+	}
+	for _, s := range c.StringSlice("anchor") {
+		a, err := parseAnchor(s)
+		if err != nil {
+			return p, err
+		}
+		p.Anchors = append(p.Anchors, a)
+	}
+	if p.Noise, err = parseNoise(c.String("noise")); err != nil {
+		return p, err
+	}
+	p.Restarts, p.Seed = c.Int("restarts"), c.Uint64("seed")
+	if p.Restarts < 0 || p.Restarts > 10000 {
+		return p, &usageError{fmt.Sprintf("--restarts %d: want 0 to 10000", p.Restarts)}
+	}
+	return p, nil
+}
+
+func tuned(terms []fit.Term, name string) bool {
+	for _, t := range terms {
+		if t.Name == name {
+			return true
+		}
+	}
+	return false
+}
+
+func parseBound(s string) (fit.Bound, error) {
+	name, value, ok := strings.Cut(s, "=")
+	lo, hi, two := strings.Cut(value, "..")
+	if !ok || !two {
+		return fit.Bound{}, &usageError{fmt.Sprintf("--bounds %q: want NAME=LOW..HIGH", s)}
+	}
+	b := fit.Bound{Name: name}
+	var err error
+	if b.Lower, err = quantity.ParseNumber(lo); err != nil {
+		return b, fmt.Errorf("--bounds %q: %w", s, err)
+	}
+	if b.Upper, err = quantity.ParseNumber(hi); err != nil {
+		return b, fmt.Errorf("--bounds %q: %w", s, err)
+	}
+	return b, nil
+}
+
+func parsePrior(s string) (fit.Prior, error) {
+	text, sd, ok := strings.Cut(s, "+-")
+	if !ok {
+		return fit.Prior{}, &usageError{fmt.Sprintf("--prior %q: want NAME=MEAN+-SD", s)}
+	}
+	v, err := parseSetting("prior", text)
+	if err != nil {
+		return fit.Prior{}, err
+	}
+	r := fit.Prior{Name: v.Name, Group: v.Group, Mean: v.Value}
+	if r.Spread, err = quantity.ParseNumber(sd); err != nil {
+		return r, fmt.Errorf("--prior %q: %w", s, err)
+	}
+	return r, nil
+}
+
+func parseAnchor(s string) (fit.Anchor, error) {
+	name, value, ok := strings.Cut(s, "=")
+	if !ok {
+		return fit.Anchor{}, &usageError{fmt.Sprintf("--anchor %q: want PROPERTY=U, e.g. vapour-pressure=1%%", s)}
+	}
+	number, percent := strings.CutSuffix(strings.TrimSpace(value), "%")
+	v, err := quantity.ParseNumber(strings.TrimSpace(number))
+	if err != nil {
+		return fit.Anchor{}, fmt.Errorf("--anchor %q: %w", s, err)
+	}
+	if percent {
+		v /= 100
+	}
+	return fit.Anchor{Property: name, Relative: v}, nil
+}
+
+func parseNoise(s string) (fit.Noise, error) {
+	kind, degrees, given := strings.Cut(s, "=")
+	n := fit.Noise{Kind: fit.NoiseKind(kind)}
+	if !given {
+		return n, nil
+	}
+	v, err := strconv.ParseFloat(degrees, 64)
+	if err != nil || n.Kind != fit.Student {
+		return n, &usageError{fmt.Sprintf("--noise %q: want gaussian, student, student=DEGREES or survival", s)}
+	}
+	n.Degrees = v
+	return n, nil
+}
