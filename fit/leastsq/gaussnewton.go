@@ -33,13 +33,25 @@ type gaussNewton struct {
 	stack      blas64.General
 	rhs        blas64.General
 	tau, work  []float64
+	qtau       []float64 // of q
+	second     blas64.General
 	column     []float64
 	evals      int
 	floorValue float64
 	seen, grad []float64 // largest column norms met; gradient of at
 }
 
-var _ local = (*gaussNewton)(nil)
+// scaleMemory: a column of J that shrinks gives up the scale D that it had by
+// half a step. With the maximum ever met (memory 1) a parameter that was
+// influential far from the optimum is held back for ever; without memory D
+// jumps. Measured on the certified sets: 1 loses MGH10 from its first start, 0
+// and 0.1 take several times more steps on Eckerle4 and Rat43.
+const scaleMemory = 0.5
+
+var (
+	_ local       = (*gaussNewton)(nil)
+	_ accelerator = (*gaussNewton)(nil)
+)
 
 func newGaussNewton(p Problem) *gaussNewton {
 	m, n := p.Size, len(p.Params)
@@ -50,7 +62,7 @@ func newGaussNewton(p Problem) *gaussNewton {
 	g := &gaussNewton{p: p, m: m, n: n, k: k, diff: newDifferences(p),
 		r: make([]float64, m), trial: make([]float64, m), jac: mat.NewDense(m, n, nil), d: make([]float64, n),
 		q: general(m, n), rt: general(k, n), c: general(m, 1), stack: general(k+n, n), rhs: general(k+n, 1),
-		tau: make([]float64, n), column: make([]float64, n), seen: make([]float64, n), grad: make([]float64, n)}
+		tau: make([]float64, n), qtau: make([]float64, n), second: general(m, 1), column: make([]float64, n), seen: make([]float64, n), grad: make([]float64, n)}
 	g.work = make([]float64, 64*(m+n)+n)
 	// Squared relative rounding of the derivatives: ε, or ε^(2/3) of central
 	// differences, each with a margin of ten.
@@ -103,7 +115,7 @@ func (g *gaussNewton) adopt(d []float64) bool {
 		for i := range g.m {
 			norm = math.Hypot(norm, g.jac.At(i, j))
 		}
-		d[j] = math.Max(d[j], norm)
+		d[j] = math.Max(norm, scaleMemory*d[j])
 		g.seen[j] = math.Max(g.seen[j], norm)
 		g.d[j] = d[j]
 		if g.d[j] == 0 { // no effect so far: leave its step at zero
@@ -117,10 +129,8 @@ func (g *gaussNewton) adopt(d []float64) bool {
 		}
 		g.c.Data[i] = g.r[i]
 	}
-	lapack64.Geqrf(g.q, g.tau[:g.k], g.work, len(g.work))
-	reflectors := g.q
-	reflectors.Cols = g.k
-	lapack64.Ormqr(blas.Left, blas.Trans, reflectors, g.tau[:g.k], g.c, g.work, len(g.work))
+	lapack64.Geqrf(g.q, g.qtau[:g.k], g.work, len(g.work))
+	g.reflect(g.c)
 	for i := range g.k {
 		for j := range g.n {
 			v := 0.0
@@ -133,7 +143,34 @@ func (g *gaussNewton) adopt(d []float64) bool {
 	return true
 }
 
+// reflect replaces v by Qᵀv.
+func (g *gaussNewton) reflect(v blas64.General) {
+	q := g.q
+	q.Cols = g.k
+	lapack64.Ormqr(blas.Left, blas.Trans, q, g.qtau[:g.k], v, g.work, len(g.work))
+}
+
 func (g *gaussNewton) solve(p []float64, free []int, λ float64) bool {
+	return g.solveFor(g.c, p, free, λ)
+}
+
+// bend solves for a = −½(JᵀJ+λD²)⁻¹Jᵀr″, r″ the second derivative of the
+// residuals along p: 2[(r(θ+hp)−r)/h − J p]/h.
+func (g *gaussNewton) bend(a, p []float64, free []int, h, λ float64) bool {
+	for i := range g.m {
+		jp := 0.0
+		for j, v := range g.jac.RawRowView(i) {
+			jp += v * p[j]
+		}
+		g.second.Data[i] = ((g.trial[i]-g.r[i])/h - jp) / h
+	}
+	g.reflect(g.second)
+	clear(a)
+	return g.solveFor(g.second, a, free, λ)
+}
+
+// solveFor solves the stacked system with c in the place of Qᵀr.
+func (g *gaussNewton) solveFor(qr blas64.General, p []float64, free []int, λ float64) bool {
 	nf := len(free)
 	rows := g.k + nf
 	a := blas64.General{Rows: rows, Cols: nf, Stride: nf, Data: g.stack.Data[:rows*nf]}
@@ -148,7 +185,7 @@ func (g *gaussNewton) solve(p []float64, free []int, λ float64) bool {
 	}
 	for i := range g.k {
 		row := g.rt.Data[i*g.rt.Stride : i*g.rt.Stride+g.n]
-		s := g.c.Data[i]
+		s := qr.Data[i]
 		for j := i; j < g.n; j++ {
 			s += row[j] * g.column[j]
 		}
