@@ -1,0 +1,328 @@
+package fluid
+
+import (
+	"errors"
+	"fmt"
+	"math"
+
+	"gonum.org/v1/gonum/interp"
+	"limsup/data/quantity"
+)
+
+// curve is a positive property of temperature: its value in SI and dln(value)/dT in 1/K.
+type curve interface {
+	at(T float64) (v, dlnvdT float64)
+}
+
+// minPoints is the least number of rows of a table: a cubic spline without artificial
+// end conditions needs four.
+const minPoints = 4
+
+// axis maps T to the variable in which a property is close to a straight line:
+// x increases with T.
+type axis interface {
+	x(T float64) (x, dxdT float64)
+}
+
+// reciprocal is x = −1/T, for the logarithm of a vapour pressure.
+type reciprocal struct{}
+
+func (reciprocal) x(T float64) (x, dxdT float64) { return -1 / T, 1 / (T * T) }
+
+// cubeRoot is x = −(1 − T/Tc)^⅓, for densities, whose difference along saturation goes
+// to zero about as τ^⅓.
+type cubeRoot struct{ tc float64 }
+
+func (c cubeRoot) x(T float64) (x, dxdT float64) {
+	τ := (c.tc - T) / c.tc
+	x = -math.Cbrt(τ)
+	return x, -x / (3 * (c.tc - T))
+}
+
+// table interpolates with the cubic spline that has no knot at the second and the last
+// but one point, in ln(value) if logarithmic.
+type table struct {
+	axis        axis
+	logarithmic bool
+	spline      interp.NotAKnotCubic
+}
+
+func (t *table) at(T float64) (v, dlnvdT float64) {
+	x, dxdT := t.axis.x(T)
+	v = t.spline.Predict(x)
+	dlnvdT = t.spline.PredictDerivative(x) * dxdT
+	if t.logarithmic {
+		return math.Exp(v), dlnvdT
+	}
+	return v, dlnvdT / v
+}
+
+// pointError is a defect of a table at one row, counted from 0.
+type pointError struct {
+	row  int
+	text string
+}
+
+func (e *pointError) Error() string { return e.text }
+
+// newTable fits a spline through (T, value) rows, value in SI. sign is the direction
+// in which the property must go with temperature: +1 or −1.
+//
+// Errors: *pointError.
+func newTable(T, v []float64, a axis, logarithmic bool, sign float64) (*table, error) {
+	if len(T) < minPoints {
+		return nil, fmt.Errorf("%d rows, want at least %d", len(T), minPoints)
+	}
+	t := &table{axis: a, logarithmic: logarithmic}
+	xs, ys := make([]float64, len(T)), make([]float64, len(T))
+	for i := range T {
+		if !(T[i] > 0) {
+			return nil, &pointError{i, fmt.Sprintf("temperature %.10g K is not positive", T[i])}
+		}
+		if !(v[i] > 0) {
+			return nil, &pointError{i, fmt.Sprintf("value %.10g is not positive", v[i])}
+		}
+		xs[i], _ = a.x(T[i])
+		if ys[i] = v[i]; logarithmic {
+			ys[i] = math.Log(v[i])
+		}
+		if i == 0 {
+			continue
+		}
+		if !(T[i] > T[i-1] && xs[i] > xs[i-1]) {
+			return nil, &pointError{i, fmt.Sprintf("temperature %.10g K does not rise above the row before it", T[i])}
+		}
+		if !(sign*ys[i] > sign*ys[i-1]) {
+			return nil, &pointError{i, fmt.Sprintf("value at %.10g K does not %s from the row before it", T[i], map[bool]string{true: "rise", false: "fall"}[sign > 0])}
+		}
+	}
+	if err := t.spline.Fit(xs, ys); err != nil {
+		return nil, err
+	}
+	// Between the rows a typing error shows as a slope of the wrong sign.
+	const steps = 16
+	for i := 1; i < len(T); i++ {
+		for k := range steps {
+			v, slope := t.at(T[i-1] + (T[i]-T[i-1])*(float64(k)+0.5)/steps)
+			if !(v > 0 && v < math.MaxFloat64 && sign*slope > 0) {
+				return nil, &pointError{i, fmt.Sprintf("rows are not smooth: the curve turns back between %.10g and %.10g K", T[i-1], T[i])}
+			}
+		}
+	}
+	return t, nil
+}
+
+// wagner is ln(P/Pc) = (Tc/T)·Σ cᵢ·τ^eᵢ.
+type wagner struct {
+	tc, pc float64
+	c, e   [4]float64
+}
+
+// wagnerExponents are those of the two usual forms.
+func wagnerExponents(form string) (e [4]float64, ok bool) {
+	switch form {
+	case "wagner-2.5-5":
+		return [4]float64{1, 1.5, 2.5, 5}, true
+	case "wagner-3-6":
+		return [4]float64{1, 1.5, 3, 6}, true
+	}
+	return e, false
+}
+
+func (w *wagner) at(T float64) (p, dlnpdT float64) {
+	τ := (w.tc - T) / w.tc
+	var f, df float64 // the sum and its derivative with respect to τ
+	for i, c := range w.c {
+		q := c * math.Pow(τ, w.e[i]-1)
+		f += q * τ
+		df += q * w.e[i]
+	}
+	f *= w.tc / T
+	return w.pc * math.Exp(f), -(f + df) / T
+}
+
+// rackett is ρ = A/B^(1+(1−T/C)^D), equation 105 of the DIPPR collection; factor
+// converts A to kg/m³.
+type rackett struct {
+	a, lnb, c, d, factor float64
+}
+
+func (r *rackett) at(T float64) (rho, dlnrhodT float64) {
+	θ := (r.c - T) / r.c
+	k := math.Pow(θ, r.d)
+	rho = r.factor * r.a * math.Exp(-r.lnb*(1+k))
+	return rho, r.lnb * r.d * k / (r.c - T)
+}
+
+// monotone checks a closed form over its range as newTable does its spline.
+func monotone(c curve, lo, hi, sign float64) error {
+	const steps = 200
+	for i := range steps + 1 {
+		T := lo + (hi-lo)*float64(i)/steps
+		if i == steps {
+			T = math.Nextafter(hi, lo)
+		}
+		v, slope := c.at(T)
+		if !(v > 0 && v < math.MaxFloat64 && sign*slope > 0 && math.Abs(slope) <= math.MaxFloat64) {
+			way := "rise"
+			if sign < 0 {
+				way = "fall"
+			}
+			return fmt.Errorf("value %.6g with slope %.3g 1/K at %.6g K: want a positive value that must %s over the whole range", v, slope, T, way)
+		}
+	}
+	return nil
+}
+
+// SaturationPressure is a correlation of the vapour pressure of the liquid.
+type SaturationPressure struct {
+	// Form is "table" (ln P interpolated against 1/T) or the equation of W. Wagner with
+	// the exponents 1, 1.5, 2.5, 5 ("wagner-2.5-5") or 1, 1.5, 3, 6 ("wagner-3-6"):
+	// ln(P/Pc) = (Tc/T)·(a·τ + b·τ^1.5 + c·τ^2.5 + d·τ^5), τ = 1 − T/Tc.
+	Form         string
+	Points       [][2]float64 // table: T in K, P in Unit
+	Tc, Pc       float64      // wagner: K and Unit
+	Coefficients []float64    // wagner: a, b, c, d
+	Unit         string       // UCUM code of pressure
+	Lo, Hi       float64      // range, K; that of the table if Form is "table"
+	Source, Note string
+	fluid        string
+	c            curve
+}
+
+// At returns P in Pa and dlnP/dT in 1/K at T in K. It allocates nothing unless it
+// fails and may be called concurrently.
+//
+// Errors: *RangeError outside the range; never extrapolated.
+func (s *SaturationPressure) At(T float64) (p, dlnpdT float64, err error) {
+	if !(T >= s.Lo && T <= s.Hi) || s.c == nil {
+		return 0, 0, &RangeError{s.fluid, "vapour pressure", T, s.Lo, s.Hi}
+	}
+	p, dlnpdT = s.c.at(T)
+	return p, dlnpdT, nil
+}
+
+// Range is the interval of temperature in K in which At answers.
+func (s *SaturationPressure) Range() (lo, hi float64) { return s.Lo, s.Hi }
+
+func (s *SaturationPressure) build(fluid string) error {
+	s.fluid = fluid
+	factor, err := scale(s.Unit, quantity.Pressure)
+	if err != nil {
+		return err
+	}
+	if s.Form == "table" {
+		T, v := columns(s.Points, factor)
+		t, err := newTable(T, v, reciprocal{}, true, +1)
+		if err != nil {
+			return err
+		}
+		s.c, s.Lo, s.Hi = t, T[0], T[len(T)-1]
+		return nil
+	}
+	e, _ := wagnerExponents(s.Form)
+	w := &wagner{tc: s.Tc, pc: factor(s.Pc), e: e}
+	copy(w.c[:], s.Coefficients)
+	if !(s.Hi < s.Tc) {
+		return fmt.Errorf("range ends at %.10g K, want it below Tc = %.10g K", s.Hi, s.Tc)
+	}
+	s.c = w
+	return monotone(w, s.Lo, s.Hi, +1)
+}
+
+// Density is a correlation of the density of the saturated liquid or vapour.
+type Density struct {
+	// Form is "table" (interpolated against (1 − T/Tc)^⅓ with the Tc of the record; the
+	// density itself for liquid, its logarithm for vapour) or, for liquid, "rackett":
+	// ρ = A/B^(1+(1−T/C)^D), equation 105 of the DIPPR collection.
+	Form         string
+	Points       [][2]float64 // table: T in K, ρ in Unit
+	Coefficients []float64    // rackett: A in Unit, B, C in K, D
+	Unit         string       // UCUM code of density, per mass or per mole
+	Lo, Hi       float64      // range, K; that of the table if Form is "table"
+	Source, Note string
+	fluid        string
+	property     string
+	c            curve
+}
+
+// amountDensity is mol/m³.
+const amountDensity = quantity.Amount - quantity.Volume
+
+// At returns ρ in kg/m³ and dlnρ/dT in 1/K at T in K. It allocates nothing unless it
+// fails and may be called concurrently.
+//
+// Errors: *RangeError outside the range; never extrapolated.
+func (d *Density) At(T float64) (rho, dlnrhodT float64, err error) {
+	if !(T >= d.Lo && T <= d.Hi) || d.c == nil {
+		return 0, 0, &RangeError{d.fluid, d.property, T, d.Lo, d.Hi}
+	}
+	rho, dlnrhodT = d.c.at(T)
+	return rho, dlnrhodT, nil
+}
+
+// Range is the interval of temperature in K in which At answers.
+func (d *Density) Range() (lo, hi float64) { return d.Lo, d.Hi }
+
+// build prepares the correlation. property is "liquid density" or "vapour density";
+// tc and molarMass are those of the record, in K and kg/mol.
+func (d *Density) build(fluid, property string, tc, molarMass float64) error {
+	d.fluid, d.property = fluid, property
+	factor, err := density(d.Unit, molarMass)
+	if err != nil {
+		return err
+	}
+	if d.Form == "table" {
+		T, v := columns(d.Points, factor)
+		for i := range T {
+			if !(T[i] < tc) {
+				return &pointError{i, fmt.Sprintf("temperature %.10g K is not below the critical temperature, %.10g K", T[i], tc)}
+			}
+		}
+		vapour := property == "vapour density"
+		sign := -1.0
+		if vapour {
+			sign = 1
+		}
+		t, err := newTable(T, v, cubeRoot{tc}, vapour, sign)
+		if err != nil {
+			return err
+		}
+		d.c, d.Lo, d.Hi = t, T[0], T[len(T)-1]
+		return nil
+	}
+	k := d.Coefficients
+	if !(k[1] > 0 && k[1] < 1) {
+		return errors.New("B of the rackett form is not between 0 and 1")
+	}
+	if !(d.Hi <= k[2]) {
+		return fmt.Errorf("range ends at %.10g K, want it at or below C = %.10g K", d.Hi, k[2])
+	}
+	r := &rackett{a: k[0], lnb: math.Log(k[1]), c: k[2], d: k[3], factor: factor(1)}
+	if d.Hi == r.c {
+		return errors.New("range ends at C, where the slope is infinite; end it below")
+	}
+	d.c = r
+	return monotone(r, d.Lo, d.Hi, -1)
+}
+
+// density converts a unit of density, per mass or per mole, to kg/m³.
+func density(unit string, molarMass float64) (func(float64) float64, error) {
+	factor, err := scale(unit, quantity.Density, amountDensity)
+	if err != nil {
+		return nil, err
+	}
+	if u, _ := quantity.ParseUnit(unit); u.Dimension() == amountDensity {
+		return func(v float64) float64 { return factor(v) * molarMass }, nil
+	}
+	return factor, nil
+}
+
+// columns splits rows into temperatures and converted values.
+func columns(points [][2]float64, factor func(float64) float64) (T, v []float64) {
+	T, v = make([]float64, len(points)), make([]float64, len(points))
+	for i, p := range points {
+		T[i], v[i] = p[0], factor(p[1])
+	}
+	return T, v
+}
