@@ -106,6 +106,7 @@ type Prediction struct {
 	Limit       Limit
 	Temperature float64 // K
 	Pressure    float64 // Pa
+	Slope       float64 // dT/dP along the line of limits, K/Pa
 	// U is the standard uncertainty of a new measurement of the limit: of the
 	// temperature in K, also for a limit pressure, mapped along the line of limits.
 	// It combines the covariance of the parameters and the spread; HasU is false
@@ -243,6 +244,7 @@ func (m *Model) Predict(q Query) (Prediction, error) {
 	if !q.AtTemperature {
 		out.Temperature = l.T + offset
 	}
+	out.Slope = l.dTdP
 	if m.Variant.Limit == Kinetic {
 		out.Log10Flux, out.HasFlux = l.lnJ/math.Ln10, true
 	}
