@@ -100,7 +100,7 @@ func newTable(T, v []float64, a axis, logarithmic bool, sign float64) (*table, e
 		return nil, err
 	}
 	// Between the rows a typing error shows as a slope of the wrong sign.
-	const steps = 16
+	const steps = 4
 	for i := 1; i < len(T); i++ {
 		for k := range steps {
 			v, slope := t.at(T[i-1] + (T[i]-T[i-1])*(float64(k)+0.5)/steps)
@@ -207,10 +207,11 @@ func (s *SaturationPressure) Range() (lo, hi float64) { return s.Lo, s.Hi }
 
 func (s *SaturationPressure) build(fluid string) error {
 	s.fluid = fluid
-	factor, err := scale(s.Unit, quantity.Pressure)
+	u, err := unitOf(s.Unit, quantity.Pressure)
 	if err != nil {
 		return err
 	}
+	factor := u.ToSI
 	if s.Form == "table" {
 		T, v := columns(s.Points, factor)
 		t, err := newTable(T, v, reciprocal{}, true, +1)
@@ -232,9 +233,8 @@ func (s *SaturationPressure) build(fluid string) error {
 
 // Density is a correlation of the density of the saturated liquid or vapour.
 type Density struct {
-	// Form is "table" (interpolated against (1 − T/Tc)^⅓ with the Tc of the record; the
-	// density itself for liquid, its logarithm for vapour) or, for liquid, "rackett":
-	// ρ = A/B^(1+(1−T/C)^D), equation 105 of the DIPPR collection.
+	// Form is "table" (ρ interpolated against (1 − T/Tc)^⅓ with the Tc of the record) or,
+	// for liquid, "rackett": ρ = A/B^(1+(1−T/C)^D), equation 105 of the DIPPR collection.
 	Form         string
 	Points       [][2]float64 // table: T in K, ρ in Unit
 	Coefficients []float64    // rackett: A in Unit, B, C in K, D
@@ -279,12 +279,11 @@ func (d *Density) build(fluid, property string, tc, molarMass float64) error {
 				return &pointError{i, fmt.Sprintf("temperature %.10g K is not below the critical temperature, %.10g K", T[i], tc)}
 			}
 		}
-		vapour := property == "vapour density"
 		sign := -1.0
-		if vapour {
+		if property == "vapour density" {
 			sign = 1
 		}
-		t, err := newTable(T, v, cubeRoot{tc}, vapour, sign)
+		t, err := newTable(T, v, cubeRoot{tc}, false, sign)
 		if err != nil {
 			return err
 		}
@@ -293,7 +292,7 @@ func (d *Density) build(fluid, property string, tc, molarMass float64) error {
 	}
 	k := d.Coefficients
 	if !(k[1] > 0 && k[1] < 1) {
-		return errors.New("B of the rackett form is not between 0 and 1")
+		return errors.New("the constant B is not between 0 and 1")
 	}
 	if !(d.Hi <= k[2]) {
 		return fmt.Errorf("range ends at %.10g K, want it at or below C = %.10g K", d.Hi, k[2])
@@ -308,14 +307,14 @@ func (d *Density) build(fluid, property string, tc, molarMass float64) error {
 
 // density converts a unit of density, per mass or per mole, to kg/m³.
 func density(unit string, molarMass float64) (func(float64) float64, error) {
-	factor, err := scale(unit, quantity.Density, amountDensity)
+	u, err := unitOf(unit, quantity.Density, amountDensity)
 	if err != nil {
 		return nil, err
 	}
-	if u, _ := quantity.ParseUnit(unit); u.Dimension() == amountDensity {
-		return func(v float64) float64 { return factor(v) * molarMass }, nil
+	if u.Dimension() == amountDensity {
+		return func(v float64) float64 { return u.ToSI(v) * molarMass }, nil
 	}
-	return factor, nil
+	return u.ToSI, nil
 }
 
 // columns splits rows into temperatures and converted values.

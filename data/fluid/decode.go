@@ -92,7 +92,7 @@ func (f *fields) value(key string, s sign, dims ...quantity.Dimension) Value {
 	if slices.Contains(dims, u.Dimension()) {
 		d = u.Dimension()
 	}
-	out, err := NewValue(given, unit, d, source)
+	out, err := valueIn(given, unit, u, d, source)
 	if err != nil {
 		at := "value"
 		var q *quantity.Error

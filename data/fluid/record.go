@@ -3,6 +3,7 @@ package fluid
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"limsup/data/quantity"
 	"limsup/eos/tension"
@@ -25,11 +26,16 @@ func NewValue(given float64, unit string, d quantity.Dimension, source string) (
 	if err != nil {
 		return Value{}, err
 	}
+	return valueIn(given, unit, u, d, source)
+}
+
+// valueIn is NewValue with the unit already parsed.
+func valueIn(given float64, code string, u quantity.Unit, d quantity.Dimension, source string) (Value, error) {
 	si, err := quantity.Quantity{Value: given, Unit: u}.In(d)
 	if err != nil {
 		return Value{}, err
 	}
-	return Value{Value: si, Given: given, Unit: unit, Source: source}, nil
+	return Value{Value: si, Given: given, Unit: code, Source: source}, nil
 }
 
 // Record is what is known about one fluid. Records from Parse, Builtin or JSON are
@@ -72,14 +78,14 @@ type Tension struct {
 
 // build checks the constants and makes the function.
 func (t *Tension) build() (tension.Func, error) {
-	factor, err := scale(t.Unit, quantity.SurfaceTension)
+	u, err := unitOf(t.Unit, quantity.SurfaceTension)
 	if err != nil {
 		return nil, err
 	}
 	if t.Form == "dippr-106" {
 		var c [5]float64
 		copy(c[:], t.Coefficients)
-		f, err := tension.NewDIPPR106(t.CriticalTemperature, factor(c[0]), c[1], c[2], c[3], c[4])
+		f, err := tension.NewDIPPR106(t.CriticalTemperature, u.ToSI(c[0]), c[1], c[2], c[3], c[4])
 		if err != nil {
 			return nil, err
 		}
@@ -87,7 +93,7 @@ func (t *Tension) build() (tension.Func, error) {
 	}
 	terms := make([]tension.Term, len(t.Terms))
 	for i, k := range t.Terms {
-		terms[i] = tension.Term{Coefficient: factor(k.Coefficient), Exponent: k.Exponent}
+		terms[i] = tension.Term{Coefficient: u.ToSI(k.Coefficient), Exponent: k.Exponent}
 	}
 	f, err := tension.NewPowerSum(t.CriticalTemperature, terms...)
 	if err != nil {
@@ -96,20 +102,14 @@ func (t *Tension) build() (tension.Func, error) {
 	return f, nil
 }
 
-// scale returns the conversion from a unit to the SI unit of its dimension, which
-// must be one of those given.
-func scale(unit string, allowed ...quantity.Dimension) (func(float64) float64, error) {
-	u, err := quantity.ParseUnit(unit)
-	if err != nil {
-		return nil, err
-	}
-	for _, d := range allowed {
-		if u.Dimension() == d {
-			return u.ToSI, nil
-		}
+// unitOf parses a unit whose dimension must be one of those allowed.
+func unitOf(code string, allowed ...quantity.Dimension) (quantity.Unit, error) {
+	u, err := quantity.ParseUnit(code)
+	if err != nil || slices.Contains(allowed, u.Dimension()) {
+		return u, err
 	}
 	_, err = quantity.Quantity{Value: 1, Unit: u}.In(allowed[0])
-	return nil, err
+	return u, err
 }
 
 // Tension returns the fluid's surface tension.

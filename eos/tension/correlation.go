@@ -1,8 +1,10 @@
 package tension
 
 import (
+	"cmp"
 	"fmt"
 	"math"
+	"slices"
 )
 
 // Func is a model of surface tension for one fluid.
@@ -42,10 +44,9 @@ const (
 	// interval in which it holds is the one around this point; every published fit
 	// covers it or ends not far below, and superheat limits lie above it.
 	referenceTr = 0.7
-	// gridPerDecade and smallestTheta set the search for changes of sign. A sum of k
-	// powers has at most k−1 of them (Descartes' rule holds for real exponents), so
-	// they are far apart on a logarithmic grid, and θ below one unit in the last place of
-	// Tr = 1 does not occur.
+	// gridPerDecade and smallestTheta set the search for roots where there can be more
+	// than one (see signChanges); these are then far apart on a logarithmic grid. θ below one unit
+	// in the last place of Tr = 1 does not occur.
 	gridPerDecade = 40
 	smallestTheta = 1e-16
 )
@@ -75,23 +76,46 @@ func NewPowerSum(Tc float64, terms ...Term) (*PowerSum, error) {
 	if σ, _ := p.value(referenceTr * Tc); !(σ > 0) {
 		return nil, &NonPositiveError{Form: powerSumForm, T: referenceTr * Tc, Sigma: σ}
 	}
-	p.below = p.edge(smallestTheta, Tc)
-	p.above = p.edge(1, 0)
+	if n := p.signChanges(); n > 0 {
+		p.below = p.edge(smallestTheta, n, Tc)
+		p.above = p.edge(1, n, 0)
+	} else {
+		p.below = Tc
+	}
 	return p, nil
 }
 
+// signChanges counts the changes of sign of the coefficients in the order of their
+// exponents. By Descartes' rule, which holds for real exponents too, the sum has at
+// most as many roots θ > 0.
+func (p *PowerSum) signChanges() int {
+	sorted := slices.SortedFunc(slices.Values(p.Terms), func(a, b Term) int { return cmp.Compare(a.Exponent, b.Exponent) })
+	last, n := 0.0, 0
+	for _, t := range sorted {
+		if t.Coefficient*last < 0 {
+			n++
+		}
+		if t.Coefficient != 0 {
+			last = math.Copysign(1, t.Coefficient)
+		}
+	}
+	return n
+}
+
 // edge returns the first temperature at which σ ≤ 0, going from the reference
-// temperature to that of thetaEnd, or otherwise if there is none.
-func (p *PowerSum) edge(thetaEnd, otherwise float64) float64 {
+// temperature to that of thetaEnd, or otherwise if there is none. A single root shows at
+// the end itself; for more the way is cut into a grid.
+func (p *PowerSum) edge(thetaEnd float64, roots int, otherwise float64) float64 {
 	start := 1 - referenceTr
-	n := int(math.Ceil(math.Abs(math.Log10(thetaEnd/start)) * gridPerDecade))
+	n := 1
+	if roots > 1 {
+		n = int(math.Ceil(math.Abs(math.Log10(thetaEnd/start)) * gridPerDecade))
+	}
 	good := referenceTr * p.CriticalTemperature
 	for i := 1; i <= n; i++ {
 		θ := start * math.Pow(thetaEnd/start, float64(i)/float64(n))
 		T := math.Min(p.CriticalTemperature*(1-θ), math.Nextafter(p.CriticalTemperature, 0))
-		if T <= 0 {
-			break
-		}
+		T = math.Max(T, p.CriticalTemperature*smallestTheta)
 		σ, _ := p.value(T)
 		if σ > 0 {
 			good = T
