@@ -38,9 +38,7 @@ func New(m *fit.Model, records []*fluid.Record, meta Meta) (*File, error) {
 		Noise: Noise{Kind: string(m.Noise.Kind), Degrees: m.Noise.Degrees},
 		Seed:  meta.Seed,
 	}
-	for _, s := range m.Settings {
-		f.Settings = append(f.Settings, Setting(s))
-	}
+	f.Settings = lastSettings(m.Settings)
 	f.Fluids = slices.Clone(records)
 	slices.SortStableFunc(f.Fluids, func(a, b *fluid.Record) int { return strings.Compare(key(a), key(b)) })
 	for _, in := range meta.Inputs {
@@ -53,6 +51,18 @@ func New(m *fit.Model, records []*fluid.Record, meta Meta) (*File, error) {
 		return nil, err
 	}
 	return f, nil
+}
+
+// lastSettings drops each setting that a later one of the same parameter and group
+// replaces.
+func lastSettings(all []fit.Setting) []Setting {
+	var out []Setting
+	for i, s := range all {
+		if !slices.ContainsFunc(all[i+1:], func(t fit.Setting) bool { return t.Name == s.Name && t.Group == s.Group }) {
+			out = append(out, Setting(s))
+		}
+	}
+	return out
 }
 
 // key is "" for a record that is missing, which the check then reports.

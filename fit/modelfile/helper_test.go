@@ -3,8 +3,10 @@ package modelfile
 import (
 	"bytes"
 	"encoding/json"
+	"maps"
 	"math"
 	"reflect"
+	"slices"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -20,8 +22,10 @@ func syntheticRecord(key string, tc float64) *fluid.Record {
 	value := func(si, given float64, unit string) fluid.Value {
 		return fluid.Value{Value: si, Given: given, Unit: unit, Source: "synthetic"}
 	}
+	boiling := value(0.66*tc, 0.66*tc, "K")
 	return &fluid.Record{
-		Key: key, Name: "Synthetic " + key,
+		BoilingTemperature: &boiling,
+		Key:                key, Name: "Synthetic " + key,
 		MolarMass:           value(0.08, 0.08, "kg/mol"),
 		CriticalTemperature: value(tc, tc, "K"),
 		CriticalPressure:    value(3.5e6, 3.5e6, "Pa"),
@@ -100,17 +104,18 @@ func equalFiles(a, b *File) bool {
 	return errR == nil && errS == nil && bytes.Equal(r, s) && reflect.DeepEqual(x, y)
 }
 
-// equalModels compares what models keep in their exported fields.
+// equalModels compares what models keep in their exported fields; gaussian noise may
+// go without saying.
 func equalModels(a, b *fit.Model) bool {
-	same := reflect.DeepEqual(a.Variant, b.Variant) && reflect.DeepEqual(a.Parameters, b.Parameters) &&
-		len(a.Settings) == len(b.Settings) && a.Noise == b.Noise && a.Calibrated == b.Calibrated && a.Degrees == b.Degrees && reflect.DeepEqual(a.Validity, b.Validity)
-	for i := range a.Settings {
-		same = same && a.Settings[i] == b.Settings[i]
+	kind := func(n fit.Noise) fit.Noise {
+		if n.Kind == "" {
+			n.Kind = fit.Gaussian
+		}
+		return n
 	}
-	for by, g := range a.References {
-		same = same && b.References[by] == g
-	}
-	same = same && len(a.References) == len(b.References) && (a.Covariance == nil) == (b.Covariance == nil)
+	same := reflect.DeepEqual(a.Variant, b.Variant) && slices.Equal(a.Parameters, b.Parameters) && slices.Equal(a.Settings, b.Settings) &&
+		kind(a.Noise) == kind(b.Noise) && a.Calibrated == b.Calibrated && a.Degrees == b.Degrees && reflect.DeepEqual(a.Validity, b.Validity)
+	same = same && maps.Equal(a.References, b.References) && (a.Covariance == nil) == (b.Covariance == nil)
 	return same && (a.Covariance == nil || mat.Equal(a.Covariance, b.Covariance))
 }
 
