@@ -195,7 +195,7 @@ func TestTwelveRowsAgainstFineTable(t *testing.T) {
 		worst[2] = math.Max(worst[2], math.Abs(v/w.VapourDensity.Points[i][1]-1))
 	}
 	t.Logf("pressure, liquid density, vapour density: %.2g", worst)
-	for i, limit := range [3]float64{1e-4, 3e-4, 1.1e-3} { // measured, rounded up
+	for i, limit := range [3]float64{1e-4, 3e-4, 4e-4} { // measured, rounded up
 		if worst[i] > limit {
 			t.Errorf("property %d: twelve rows miss by %.2g, want within %g", i, worst[i], limit)
 		}

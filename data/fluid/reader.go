@@ -81,7 +81,11 @@ func (f *fields) close() {
 			continue
 		}
 		text := fmt.Sprintf("unknown key %s", quoted(k))
-		if near := quantity.Near(k, known); len(near) > 0 {
+		near := quantity.Near(k, known)
+		if len(near) == 0 {
+			near = slices.DeleteFunc(slices.Clone(known), func(s string) bool { return k == "" || !strings.HasPrefix(s, k) })
+		}
+		if len(near) > 0 {
 			text += "; did you mean " + strings.Join(near, " or ") + "?"
 		}
 		f.r.problem(join(f.path, k), "%s", text)
