@@ -34,7 +34,8 @@ func spectrumOf(jac *mat.Dense, free []int, cut float64) (*spectrum, bool) {
 	if len(s.live) == 0 {
 		return s, true
 	}
-	a := mat.NewDense(m, len(s.live), nil)
+	// Zero rows below a wide J give V its missing columns.
+	a := mat.NewDense(max(m, len(s.live)), len(s.live), nil)
 	for c, j := range s.live {
 		for i := range m {
 			a.Set(i, c, jac.At(i, j)/s.scale[c])
@@ -152,37 +153,29 @@ func (s *spectrum) null(n int) []Direction {
 // be missing.
 func (r *Result) uncertainties(s *spectrum, factor float64, noFactor string) {
 	n := len(r.X)
-	r.StdErr, r.NoStdErr = make([]float64, n), make([]string, n)
 	r.SingularValues, r.Rank = s.values, s.rank
 	r.null = s.null(n)
+	reason := noFactor
 	switch {
 	case len(s.free) == 0:
-		r.CovarianceReason = "every parameter is at a bound"
+		reason = "every parameter is at a bound"
 	case !s.full():
-		r.CovarianceReason = r.blame(s)
+		reason = r.blame(s)
 	default:
 		r.unscaled = s.inverse(n)
 		if !allFinite(r.unscaled.RawSymmetric().Data) {
-			r.unscaled = nil
-			r.CovarianceReason = "the inverse of the information exceeds the range of numbers"
-		} else if noFactor != "" {
-			r.CovarianceReason = noFactor
+			r.unscaled, reason = nil, "the inverse of the information exceeds the range of numbers"
 		}
 	}
-	for i, side := range r.AtBound {
-		if side != Inside {
-			r.NoStdErr[i] = side.String()
-		} else {
-			r.NoStdErr[i] = r.CovarianceReason
-		}
-	}
-	if r.CovarianceReason != "" {
+	r.missing(reason)
+	if reason != "" {
 		return
 	}
 	r.Covariance = mat.NewSymDense(n, nil)
 	r.Covariance.ScaleSym(factor, r.unscaled)
 	for _, i := range s.free {
 		r.StdErr[i] = math.Sqrt(r.Covariance.At(i, i))
+		r.NoStdErr[i] = ""
 	}
 }
 

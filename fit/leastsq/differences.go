@@ -14,13 +14,14 @@ var centralStep = math.Cbrt(0x1p-52)
 // none, by second-order differences that stay between the bounds.
 type differences struct {
 	p           Problem
+	b           *box
 	x           []float64
 	lo, hi, mid []float64
 	evals       int
 }
 
-func newDifferences(p Problem) *differences {
-	return &differences{p: p, x: make([]float64, len(p.Params)), lo: make([]float64, p.Size), hi: make([]float64, p.Size), mid: make([]float64, p.Size)}
+func newDifferences(p Problem, b *box) *differences {
+	return &differences{p: p, b: b, x: make([]float64, len(p.Params)), lo: make([]float64, p.Size), hi: make([]float64, p.Size), mid: make([]float64, p.Size)}
 }
 
 func (d *differences) jacobian(dst *mat.Dense, theta []float64) error {
@@ -35,24 +36,20 @@ func (d *differences) jacobian(dst *mat.Dense, theta []float64) error {
 		}
 		return nil
 	}
-	b, err := newBox(d.p.Params)
-	if err != nil {
-		return err
-	}
-	return d.numerical(dst, theta, b, centralStep)
+	return d.numerical(dst, theta, centralStep)
 }
 
 // numerical fills dst by differences with the given relative step.
-func (d *differences) numerical(dst *mat.Dense, theta []float64, b *box, step float64) error {
+func (d *differences) numerical(dst *mat.Dense, theta []float64, step float64) error {
 	copy(d.x, theta)
 	for j := range theta {
-		if b.lower[j] == b.upper[j] { // held: no neighbour may be evaluated
+		if d.b.lower[j] == d.b.upper[j] { // held: no neighbour may be evaluated
 			for i := range d.p.Size {
 				dst.Set(i, j, 0)
 			}
 			continue
 		}
-		if err := d.column(dst, j, theta, b, step); err != nil {
+		if err := d.column(dst, j, theta, step); err != nil {
 			return err
 		}
 		d.x[j] = theta[j]
@@ -62,7 +59,8 @@ func (d *differences) numerical(dst *mat.Dense, theta []float64, b *box, step fl
 
 // column is (r(θ+h)−r(θ−h))/2h or, where a bound or an error is in the way of
 // one side, the one-sided formula (−3r(θ)+4r(θ+h)−r(θ+2h))/2h.
-func (d *differences) column(dst *mat.Dense, j int, theta []float64, b *box, step float64) error {
+func (d *differences) column(dst *mat.Dense, j int, theta []float64, step float64) error {
+	b := d.b
 	h := step * b.difference(j, theta[j])
 	below, above := theta[j]-b.lower[j], b.upper[j]-theta[j]
 	if below >= h && above >= h {
@@ -119,7 +117,8 @@ func (d *differences) at(dst []float64, j int, v float64) error {
 }
 
 // difference is the length to which the relative difference step applies: |x|,
-// kept off zero by a thousandth of the scale.
+// kept off zero by a tenth of the scale, so that a parameter that happens to be
+// near zero is not differenced over a rounding error.
 func (b *box) difference(i int, x float64) float64 {
-	return math.Max(math.Abs(x), 1e-3*b.scale[i])
+	return math.Max(math.Abs(x), 0.1*b.scale[i])
 }

@@ -53,13 +53,13 @@ var (
 	_ accelerator = (*gaussNewton)(nil)
 )
 
-func newGaussNewton(p Problem) *gaussNewton {
+func newGaussNewton(p Problem, b *box) *gaussNewton {
 	m, n := p.Size, len(p.Params)
 	k := min(m, n)
 	general := func(r, c int) blas64.General {
 		return blas64.General{Rows: r, Cols: c, Stride: c, Data: make([]float64, r*c)}
 	}
-	g := &gaussNewton{p: p, m: m, n: n, k: k, diff: newDifferences(p),
+	g := &gaussNewton{p: p, m: m, n: n, k: k, diff: newDifferences(p, b),
 		r: make([]float64, m), trial: make([]float64, m), jac: mat.NewDense(m, n, nil), d: make([]float64, n),
 		q: general(m, n), rt: general(k, n), c: general(m, 1), stack: general(k+n, n), rhs: general(k+n, 1),
 		tau: make([]float64, n), qtau: make([]float64, n), second: general(m, 1), column: make([]float64, n), seen: make([]float64, n), grad: make([]float64, n)}

@@ -70,9 +70,7 @@ func (w *newton) adopt(d []float64) bool {
 
 func (w *newton) solve(p []float64, free []int, λ float64) bool {
 	nf := len(free)
-	for j, v := range p {
-		w.step[j] = v
-	}
+	copy(w.step, p)
 	for _, j := range free {
 		w.step[j] = 0
 	}

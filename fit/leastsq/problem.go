@@ -48,7 +48,7 @@ type Objective struct {
 // JᵀJ/σ². It suits Profile; Solve keeps more digits than Minimize on it.
 func (p Problem) Objective(sigma float64) Objective {
 	r := make([]float64, p.Size)
-	dr := newDifferences(p)
+	var dr *differences
 	jac := mat.NewDense(max(p.Size, 1), max(len(p.Params), 1), nil)
 	w := 1 / (sigma * sigma)
 	return Objective{Params: p.Params, Size: p.Size, Eval: func(theta, grad []float64, curv *mat.SymDense) (float64, error) {
@@ -58,6 +58,13 @@ func (p Problem) Objective(sigma float64) Objective {
 		f := 0.5 * w * sumSquares(r)
 		if grad == nil && curv == nil {
 			return f, nil
+		}
+		if dr == nil {
+			b, err := newBox(p.Params)
+			if err != nil {
+				return 0, err
+			}
+			dr = newDifferences(p, b)
 		}
 		if err := dr.jacobian(jac, theta); err != nil {
 			return 0, err
@@ -92,9 +99,9 @@ type Settings struct {
 	// Seed of the Halton scrambling and of the evolution strategy.
 	Seed uint64
 	// Local switches the second attempts off: by default a search that ends
-	// without convergence, or where a parameter has lost its effect, is followed
-	// by BFGS (Minimize), Nelder–Mead and CMA-ES from the best point and by ten
-	// further starts.
+	// without convergence is followed by BFGS (Minimize only), Nelder–Mead and
+	// CMA-ES from the best point, and one that still has not converged, or has
+	// strayed to where a parameter has lost its effect, by ten further starts.
 	Local bool
 }
 
@@ -130,9 +137,15 @@ type box struct {
 	scale               []float64
 }
 
+// mostParameters is the dimension to which the Halton sequence of gonum reaches.
+const mostParameters = 1000
+
 func newBox(params []Param) (*box, error) {
 	if len(params) == 0 {
 		return nil, &InputError{"problem", "there are no parameters"}
+	}
+	if len(params) > mostParameters {
+		return nil, &InputError{"problem", fmt.Sprintf("%d parameters are more than %d", len(params), mostParameters)}
 	}
 	b := &box{}
 	for i, p := range params {

@@ -9,13 +9,13 @@ import (
 
 // attempt is the outcome of one local search.
 type attempt struct {
-	x                  []float64
-	value              float64
-	end                ending
-	status             optimize.Status
-	distance           float64
-	iterations, trials int
-	method             string
+	x          []float64
+	value      float64
+	end        ending
+	status     optimize.Status
+	distance   float64
+	iterations int
+	method     string
 }
 
 func (a *attempt) converged() bool { return a.end == optimum || a.end == exact || a.end == rounding }
@@ -43,7 +43,6 @@ type search struct {
 	accepted int
 	failures int // starts without a value
 	starts   int
-	lowest   float64 // value at the given start
 }
 
 // Rounding of a sum of squares or of a log-likelihood, relative: a run of
@@ -97,19 +96,22 @@ func (q *search) run(doubtful func(*attempt) bool) {
 	for _, x := range q.b.spread(q.s.Starts-1, q.s.Seed) {
 		q.from(x, q.name)
 	}
-	if q.s.Local || q.best.converged() && !doubtful(&q.best) {
+	if q.s.Local || q.best.end == unevaluated && q.s.Starts > 1 {
 		return
-	}
-	for _, x := range q.b.spread(furtherStarts, q.s.Seed+1) {
-		q.from(x, q.name)
 	}
 	for _, f := range q.fallbacks() {
 		if q.best.converged() || q.best.end == unevaluated {
-			return
+			break
 		}
 		if x, ok := f.run(q.best.x, q.best.value); ok {
 			q.from(x, f.name+", then "+q.name)
 		}
+	}
+	if q.best.converged() && !doubtful(&q.best) {
+		return
+	}
+	for _, x := range q.b.spread(furtherStarts, q.s.Seed+1) {
+		q.from(x, q.name)
 	}
 }
 
@@ -125,7 +127,7 @@ func (q *search) reason() string {
 	}
 	switch a.end {
 	case optimum:
-		return fmt.Sprintf("converged%s: %.1g standard errors or less are left to the optimum", after, math.Max(a.distance, q.s.Tolerance))
+		return fmt.Sprintf("converged%s: at most %.1g standard errors are left to the optimum", after, math.Max(a.distance, q.s.Tolerance))
 	case exact:
 		return "converged" + after + ": every residual is zero"
 	case rounding:

@@ -27,7 +27,7 @@ func Solve(p Problem, s Settings) (*Result, error) {
 	if p.Residuals == nil {
 		return nil, &InputError{"problem", "Residuals is missing"}
 	}
-	g := newGaussNewton(p)
+	g := newGaussNewton(p, b)
 	q := &search{b: b, s: s.withDefaults(), m: g, name: "Gauss–Newton"}
 	cut := math.Sqrt(g.floor()) * float64(max(p.Size, len(b.start)))
 	if p.Jacobian == nil {
@@ -54,7 +54,7 @@ func Solve(p Problem, s Settings) (*Result, error) {
 	free := b.inside(r.X)
 	sp, ok := spectrumOf(g.jac, free, cut)
 	if !ok {
-		r.noSpectrum()
+		r.missing("the derivatives could not be decomposed")
 		return r, nil
 	}
 	dof := p.Size - len(free)
@@ -65,6 +65,9 @@ func Solve(p Problem, s Settings) (*Result, error) {
 		noFactor = fmt.Sprintf("%d residuals leave no degree of freedom for the spread of %d parameters", p.Size, len(free))
 	}
 	r.uncertainties(sp, factor, noFactor)
+	if dof < 0 {
+		r.missing(fmt.Sprintf("%d residuals cannot determine %d parameters: %s", p.Size, len(free), r.CovarianceReason))
+	}
 	r.warn(sp)
 	return r, nil
 }
@@ -105,7 +108,7 @@ func Minimize(o Objective, s Settings) (*Result, error) {
 	r.Evaluations = w.evals
 	sp, ok := spectrumOfCurvature(w.h, b.inside(r.X), cut)
 	if !ok {
-		r.noSpectrum()
+		r.missing("the derivatives could not be decomposed")
 		return r, nil
 	}
 	r.uncertainties(sp, 1, "")
@@ -128,22 +131,31 @@ func (q *search) result() (*Result, error) {
 		return nil, &EvaluationError{Starts: q.starts, Theta: q.b.start}
 	}
 	r := &Result{Names: q.b.names, X: a.x, Value: a.value, Method: a.method, Iterations: q.accepted, Distance: a.distance,
-		Converged: a.converged(), Usable: true, Reason: q.reason()}
+		Converged: a.converged(), Usable: a.converged() || a.iterations > 0, Reason: q.reason()}
 	for i, x := range a.x {
 		r.AtBound = append(r.AtBound, q.b.side(i, x))
 	}
 	if q.failures > 0 {
 		r.Warnings = append(r.Warnings, fmt.Sprintf("%d of %d starts have no value or derivatives and were passed over", q.failures, q.starts))
 	}
+	for i, x := range a.x {
+		if !r.Converged && x == q.b.start[i] && r.AtBound[i] == Inside {
+			r.Warnings = append(r.Warnings, r.Names[i]+" has not moved from its start")
+		}
+	}
 	return r, nil
 }
 
-func (r *Result) noSpectrum() {
+// missing gives the reason why there is no covariance.
+func (r *Result) missing(reason string) {
 	n := len(r.X)
+	r.Covariance, r.CovarianceReason = nil, reason
 	r.StdErr, r.NoStdErr = make([]float64, n), make([]string, n)
-	r.CovarianceReason = "the derivatives could not be decomposed"
-	for i := range r.NoStdErr {
-		r.NoStdErr[i] = r.CovarianceReason
+	for i, side := range r.AtBound {
+		r.NoStdErr[i] = reason
+		if side != Inside {
+			r.NoStdErr[i] = side.String()
+		}
 	}
 }
 
