@@ -166,6 +166,12 @@ colour = "blue"`).Replace(good)
 	if s := strings.Join(got, " "); s != want {
 		t.Errorf("problems in %s, want %s\n%v", s, want, ps)
 	}
+	// Places inside the tables of a second record are its own.
+	second := strings.NewReplacer(`"mine"`, `"other"`, `[350, 340]`, `[350, 34]`).Replace(good)
+	n := strings.Count(good, "\n")
+	if ps := problems(t, good+second); len(ps) != 1 || ps[0].Line != n+27 || ps[0].Fluid != "other" {
+		t.Errorf("problem of a second record: %v, want it at line %d", ps, n+27)
+	}
 	var q *quantity.Error
 	if !errors.As(ps, &q) || q.Kind != quantity.WrongDimension {
 		t.Errorf("no *quantity.Error inside %v", ps)
