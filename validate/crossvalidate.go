@@ -1,6 +1,7 @@
 package validate
 
 import (
+	"context"
 	"fmt"
 	"math"
 	"runtime"
@@ -8,6 +9,7 @@ import (
 
 	"gonum.org/v1/gonum/stat/distuv"
 
+	"limsup/data/measure"
 	"limsup/fit"
 )
 
@@ -31,7 +33,14 @@ type LeftOut struct {
 	HasU     bool
 	Boiled   bool // intact rows are predicted but do not enter the errors
 	Degrees  int
-	Variance float64 // stated variance of the reading, K²
+	Variance float64 // of the reading from its stated uncertainties, K²
+}
+
+// Total is the standard uncertainty of the tuned residual in K: of the prediction with
+// its spread, and of the reading as stated. ok is false where the model has none.
+func (l *LeftOut) Total() (u float64, ok bool) {
+	u = math.Sqrt(float64(l.U*l.U) + l.Variance)
+	return u, l.HasU && u > 0
 }
 
 // CrossValidation compares the tuned model with the untuned one on rows that were
@@ -68,6 +77,11 @@ func (e *FoldError) Unwrap() error { return e.Err }
 //
 // Errors: *FoldError for the first fold that could not be tuned or predicted.
 func CrossValidate(d *fit.Data, p fit.Plan, f *Folds, warm *fit.Calibration) (*CrossValidation, error) {
+	return crossValidate(context.Background(), d, p, f, warm, func() {})
+}
+
+// crossValidate is CrossValidate that can be stopped and calls tick after each fold.
+func crossValidate(ctx context.Context, d *fit.Data, p fit.Plan, f *Folds, warm *fit.Calibration, tick func()) (*CrossValidation, error) {
 	untuned, err := fit.Untuned(p.Variant, p.Fixed...)
 	if err != nil {
 		return nil, err
@@ -75,10 +89,16 @@ func CrossValidate(d *fit.Data, p fit.Plan, f *Folds, warm *fit.Calibration) (*C
 	cv := &CrossValidation{Folds: f, Rows: make([]LeftOut, len(d.Observations))}
 	errs := make([]error, len(f.Names))
 	parallel(len(f.Names), func(k int) {
-		if err := cv.leaveOut(d, p, k, untuned, warm); err != nil {
-			errs[k] = &FoldError{f.Names[k], err}
+		if ctx.Err() == nil {
+			if err := cv.leaveOut(d, p, k, untuned, warm); err != nil {
+				errs[k] = &FoldError{f.Names[k], err}
+			}
+			tick()
 		}
 	})
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
 	for _, err := range errs {
 		if err != nil {
 			return nil, err
@@ -131,9 +151,28 @@ func (cv *CrossValidation) leaveOut(d *fit.Data, p fit.Plan, k int, untuned *fit
 			return fmt.Errorf("%s: %w", o.At(), err)
 		}
 		cv.Rows[i] = LeftOut{Index: i, Fold: k, Tuned: o.Temperature - tuned.Temperature, Untuned: o.Temperature - before.Temperature,
-			U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == 0, Degrees: m.Degrees, Variance: o.UTemperature * o.UTemperature}
+			U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Degrees: m.Degrees, Variance: statedVariance(o, tuned.Slope)}
 	}
 	return nil
+}
+
+// statedVariance is that of a residual from the stated uncertainties of its reading,
+// in K², with the slope dT/dP of the line of limits.
+func statedVariance(o *fit.Observation, slope float64) float64 {
+	t, p := o.UTemperature, o.UPressure*slope
+	return float64(t*t) + float64(p*p)
+}
+
+// scores are the errors of the rows that boiled.
+func (cv *CrossValidation) scores() (tuned, untuned scores) {
+	for i := range cv.Rows {
+		if r := &cv.Rows[i]; r.Boiled {
+			tuned.e, untuned.e = append(tuned.e, r.Tuned), append(untuned.e, r.Untuned)
+			tuned.fold = append(tuned.fold, r.Fold)
+		}
+	}
+	tuned.folds, untuned.folds, untuned.fold = len(cv.Folds.Names), len(cv.Folds.Names), tuned.fold
+	return tuned, untuned
 }
 
 // verdictLevel is the two-sided level of the test behind a verdict.
@@ -141,49 +180,22 @@ const verdictLevel = 0.95
 
 // judge sums the errors and passes the verdict: the difference of the two
 // root-mean-square errors against its standard error, by Student's t on the folds.
-//
-// With M the mean square of n errors e, RMSE changes by (e² − M)/(2n·RMSE) for one
-// more row, so the difference is a mean of paired contributions; those of one fold
-// stay together, since its rows share a model.
 func (cv *CrossValidation) judge() {
-	var n, tuned, untuned float64
-	for _, r := range cv.Rows {
-		if r.Boiled {
-			n++
-			tuned += r.Tuned * r.Tuned
-			untuned += r.Untuned * r.Untuned
-		}
-	}
-	if n == 0 {
-		cv.Verdict, cv.Reason = NoGain, "no row that boiled was left out"
-		return
-	}
-	cv.RMSE, cv.UntunedRMSE = math.Sqrt(tuned/n), math.Sqrt(untuned/n)
-	cv.Difference = cv.RMSE - cv.UntunedRMSE
-	sum := make([]float64, len(cv.Folds.Names))
-	for _, r := range cv.Rows {
-		if r.Boiled {
-			sum[r.Fold] += influence(r.Tuned, tuned/n, cv.RMSE) - influence(r.Untuned, untuned/n, cv.UntunedRMSE)
-		}
-	}
-	folds, ss := 0.0, 0.0
-	present := make([]bool, len(sum))
-	for _, r := range cv.Rows {
-		present[r.Fold] = present[r.Fold] || r.Boiled
-	}
-	for k, s := range sum {
-		if present[k] {
-			folds++
-			ss += s * s
-		}
-	}
-	if folds < 2 {
-		cv.Verdict, cv.Reason = NoGain, "fewer than two folds hold a row that boiled"
-		return
-	}
-	cv.DifferenceSE = math.Sqrt(ss*folds/(folds-1)) / n
-	t := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: folds - 1}.Quantile(0.5 + verdictLevel/2)
+	tuned, untuned := cv.scores()
 	cv.Verdict = NoGain
+	if len(tuned.e) == 0 {
+		cv.Reason = "no row that boiled was left out"
+		return
+	}
+	cv.RMSE, cv.UntunedRMSE = rmse(tuned.e), rmse(untuned.e)
+	cv.Difference = cv.RMSE - cv.UntunedRMSE
+	se, folds := tuned.differenceSE(untuned.e)
+	if folds < 2 {
+		cv.Reason = "fewer than two folds hold a row that boiled"
+		return
+	}
+	cv.DifferenceSE = se
+	t := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: float64(folds - 1)}.Quantile(0.5 + verdictLevel/2)
 	switch {
 	case cv.Difference < -t*cv.DifferenceSE:
 		cv.Verdict = Better
@@ -191,13 +203,5 @@ func (cv *CrossValidation) judge() {
 		cv.Verdict = Worse
 	}
 	cv.Reason = fmt.Sprintf("on left-out rows the tuned model errs by %.3g K and the untuned one by %.3g K; the difference %.3g K has a standard error of %.2g K, and |difference| > %.2f standard errors decides at 95 %% with %d folds",
-		cv.RMSE, cv.UntunedRMSE, cv.Difference, cv.DifferenceSE, t, int(folds))
-}
-
-// influence is the contribution of an error e to a root mean square, about zero.
-func influence(e, mean, rms float64) float64 {
-	if rms == 0 {
-		return 0
-	}
-	return (e*e - mean) / (2 * rms)
+		cv.RMSE, cv.UntunedRMSE, cv.Difference, cv.DifferenceSE, t, folds)
 }
