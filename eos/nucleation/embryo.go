@@ -71,7 +71,9 @@ func (f *Fluid) bubble(T, P, ps float64) (Embryo, error) {
 		BarrierOverKT: p.barrier, Barrier: p.barrier * eos.Boltzmann * T,
 		LnJ: x.LnJ, Held: x.Held,
 	}
-	e.count(p.vVapour, p.vLiquid)
+	if !e.count(p.vVapour, p.vLiquid) {
+		return Embryo{}, f.tooLarge(T, P)
+	}
 	v := p.vLiquid
 	if !f.corr {
 		s, err := f.c.Model.Saturation(T)
@@ -126,19 +128,24 @@ func (f *Fluid) droplet(T, P float64) (Embryo, error) {
 	e.Radius = 2 * e.Tension / excess
 	e.Barrier = 16 * math.Pi * e.Tension * e.Tension * e.Tension / (3 * excess * excess)
 	e.BarrierOverKT = e.Barrier / (eos.Boltzmann * T)
-	e.count(xl*m.B, vv)
 	e.LnJ = math.Log(eos.Avogadro/vv*P/(eos.Boltzmann*T)*xl*m.B/eos.Avogadro) + 0.5*math.Log(e.Tension) + f.lnMass + f.prefactor - e.BarrierOverKT
-	if math.IsInf(e.Barrier, 0) || math.IsInf(e.Radius, 0) {
-		return Embryo{}, &StateError{f.name, T, P, "too close to saturation for a critical embryo of finite size"}
+	if !e.count(xl*m.B, vv) || math.IsInf(e.Barrier, 0) {
+		return Embryo{}, f.tooLarge(T, P)
 	}
 	return e, nil
 }
 
-// count sets the number of molecules from the molar volumes inside and outside.
-func (e *Embryo) count(inside, outside float64) {
+func (f *Fluid) tooLarge(T, P float64) error {
+	return &StateError{f.name, T, P, "too close to saturation for a critical embryo of finite size"}
+}
+
+// count sets the number of molecules from the molar volumes inside and outside;
+// false when the embryo is too large for it to be a number.
+func (e *Embryo) count(inside, outside float64) bool {
 	volume := 4 * math.Pi / 3 * e.Radius * e.Radius * e.Radius
 	e.Molecules = volume * eos.Avogadro / inside
 	e.Excess = volume * eos.Avogadro * (1/inside - 1/outside)
+	return !math.IsInf(e.Molecules, 0) && !math.IsInf(e.Excess, 0)
 }
 
 // FreeEnergy is ΔG(r) = 4πr²σ − (4/3)πr³(P_inside − P) in J for an embryo of

@@ -24,7 +24,7 @@ type NoLimitError struct {
 	Fluid     string
 	Given     float64 // the pressure in Pa or, with AtT, the temperature in K
 	AtT       bool
-	Threshold float64 // log₁₀(J*/(m⁻³s⁻¹))
+	Threshold float64 // log₁₀(J*/(m⁻³s⁻¹)); of a per-kelvin target that at the end of the search, if Known
 	Reached   float64 // log₁₀J at the end of the search, where known
 	Known     bool    // Reached is a number
 	End       float64 // where the search ended: K, or Pa with AtT

@@ -42,7 +42,11 @@ const (
 	noTension            // σ∞ not known or not positive
 	tolmanTooLarge       // δΔP ≥ σ∞: no embryo of positive tension and radius
 	noSaturation
+	badPressure // no number, or beyond maxPressure
 )
+
+// maxPressure in Pa bounds both signs: far beyond any liquid, and safe to square.
+const maxPressure = 1e15
 
 // minimumB is the smallest kinetic factor used. B = (2 + P_l/P_v)/3 falls to zero
 // for a liquid under a tension of 2P_v, where a bubble of a given number of
@@ -97,6 +101,9 @@ func (f *Fluid) evaluate(T, P float64, p *point) cause {
 	if !(T >= f.tlo && T < f.thi) {
 		return outsideRange
 	}
+	if !(math.Abs(P) <= maxPressure) {
+		return badPressure
+	}
 	sigma, dsigma, err := f.c.Tension.Sigma(T)
 	if err != nil || !(sigma > 0) {
 		return noTension
@@ -119,6 +126,9 @@ func (f *Fluid) evaluate(T, P float64, p *point) cause {
 	// Young–Laplace: ΔP = 2σ/r with σ = σ∞/(1 + 2δ/r), hence σ = σ∞ − δΔP.
 	p.excess = p.pv - P
 	δ := f.c.TolmanLength
+	if !(p.excess > 0) {
+		δ = 0 // no embryo, no curvature: ψ goes on with σ∞
+	}
 	p.sigma = p.sigmaFlat - δ*p.excess
 	if !(p.sigma > 0) {
 		return tolmanTooLarge

@@ -119,6 +119,8 @@ func (f *Fluid) explain(c cause, T, P float64) error {
 	switch c {
 	case outsideRange:
 		return &eos.DomainError{Fluid: f.name, Equation: f.source(), Quantity: "flux", Argument: "temperature", Value: T, Lo: f.tlo, Hi: f.thi, Unit: "K"}
+	case badPressure:
+		return &eos.DomainError{Fluid: f.name, Equation: f.source(), Quantity: "flux", Argument: "pressure", Value: P, Lo: -maxPressure, Hi: maxPressure, Unit: "Pa"}
 	case noLiquid:
 		_, err := f.c.Model.Liquid(T, P)
 		if err != nil {

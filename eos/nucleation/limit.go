@@ -70,11 +70,12 @@ type Limit struct {
 const maxSteps = 120
 
 // limitTolerance is the relative step at which a limit is taken; the error left
-// is of the order of its square times the curvature of ψ, below 1e-12. The steps for a
-// per-kelvin target shrink by a constant factor of about 100 instead and need
-// their own tolerance.
+// is of the order of its square times the curvature of ψ, T/(Tc−T): below 1e-12,
+// which nearTolerance ensures close to Tc. A per-kelvin target drifts with the state, which the slope of ψ does not know; a
+// secant stands in for it, and its slower steps need their own tolerance.
 const (
-	limitTolerance     = 1e-7
+	limitTolerance     = 1e-8
+	nearTolerance      = 3e-7
 	perKelvinTolerance = 1e-11
 )
 
@@ -85,13 +86,37 @@ func (t *Target) tolerance() float64 {
 	return limitTolerance
 }
 
+// secant remembers the last point of a search.
+type secant struct {
+	x, y float64
+	set  bool
+}
+
+// slope is that of the line through the last point and (x, y) for a per-kelvin
+// target; else, and where the line points the other way, the one given.
+func (s *secant) slope(t *Target, x, y, given float64) float64 {
+	if !t.PerKelvin || math.IsNaN(given) {
+		return given
+	}
+	last := *s
+	*s = secant{x, y, true}
+	if k := (y - last.y) / (x - last.x); last.set && k/given > 0 {
+		return k
+	}
+	return given
+}
+
 // KineticLimit returns the temperature at which the flux of the liquid at P
 // reaches the target, starting from a guess in K (0 for none).
 //
 // Errors: *NoLimitError when J stays below J* up to the spinodal;
-// *eos.DomainError for P at or above the critical pressure; *ConvergenceError.
+// *eos.DomainError for P at or above the critical pressure, or a target that is not
+// a number; *ConvergenceError.
 func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) {
-	if math.IsNaN(P) || math.IsInf(P, 0) || (!f.corr && P >= f.c.Model.Pc) {
+	if err := f.checkTarget(t); err != nil {
+		return Limit{}, err
+	}
+	if !(math.Abs(P) <= maxPressure) || (!f.corr && P >= f.c.Model.Pc) {
 		return Limit{}, &eos.DomainError{Fluid: f.name, Equation: f.source(), Quantity: "kinetic limit", Argument: "pressure", Value: P, Lo: math.Inf(-1), Hi: f.c.Model.Pc, Unit: "Pa"}
 	}
 	lo, hi := f.tlo, f.thi
@@ -100,6 +125,7 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 		T = f.firstGuess(P)
 	}
 	var p point
+	var line secant
 	spinodal := false // hi is the spinodal, or a temperature proven above the limit
 	var residual float64
 	for i := 1; i <= maxSteps; i++ {
@@ -114,8 +140,8 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 			} else {
 				lo = T
 			}
-			next = T - ψ/slope
-			if math.Abs(next-T) <= t.tolerance()*T && next > 0 {
+			next = T - ψ/line.slope(&t, T, ψ, slope)
+			if math.Abs(next-T) <= math.Min(t.tolerance()*T, nearTolerance*math.Sqrt(T*(f.thi-T))) && next > 0 {
 				// one last evaluation brings everything to the limit itself
 				if f.evaluate(next, P, &p) == fine && p.excess > 0 {
 					return f.limitAt(&p, t, i+1, false)
@@ -131,7 +157,7 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 			hi, spinodal, next = T, true, math.NaN()
 		default:
 			if T >= hi || T <= lo { // rounding at the ends of the range
-				return Limit{}, f.noLimit(P, t, T, false)
+				return Limit{}, f.noLimit(P, t, T, T, false)
 			}
 			return Limit{}, f.explain(c, T, P)
 		}
@@ -139,11 +165,19 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 			if !spinodal {
 				// The end of the bracket has not been proven to lie beyond the limit.
 				end, isSpinodal := f.hottest(P)
-				if c := f.evaluate(end, P, &p); c == fine {
+				switch f.evaluate(end, P, &p) {
+				case fine:
 					if ψ, _ := f.psi(&p, t, false); ψ < 0 {
-						return Limit{}, f.noLimit(P, t, end, isSpinodal)
+						// J peaks a little before the spinodal; the limit may lie before the peak.
+						top, ψ := f.peak(lo, end, func(T float64) (float64, float64) { return f.psiAt(T, P, t, false) })
+						if ψ < 0 {
+							return Limit{}, f.noLimit(P, t, end, top, isSpinodal)
+						}
+						end = top
 					}
 					hi = math.Min(hi, end)
+				case noVapour: // not even superheated there
+					return Limit{}, f.noLimit(P, t, end, end, isSpinodal)
 				}
 				spinodal = true
 			}
@@ -158,6 +192,54 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 		T = next
 	}
 	return Limit{}, &ConvergenceError{Fluid: f.name, Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
+}
+
+// psiAt is psi at a state of its own, NaN where there is none.
+func (f *Fluid) psiAt(T, P float64, t Target, atT bool) (ψ, slope float64) {
+	var p point
+	if f.evaluate(T, P, &p) != fine {
+		return math.NaN(), math.NaN()
+	}
+	return f.psi(&p, t, atT)
+}
+
+// peak finds the largest ψ between a state inside and one next to the spinodal,
+// where it is below zero. The density of the liquid, and with it the flux, falls
+// with an infinite slope at the spinodal, as the square root of the distance, so
+// that ψ has a maximum just before it. The search halves the logarithm of the
+// distance on the sign of the slope.
+func (f *Fluid) peak(inside, spinodal float64, psi func(x float64) (ψ, slope float64)) (x, ψ float64) {
+	sign := 1.0
+	if spinodal < inside {
+		sign = -1
+	}
+	width := math.Abs(spinodal - inside)
+	far, near := math.Log(width), math.Log(width*1e-9)
+	x = spinodal
+	ψ = math.Inf(-1)
+	for range 50 {
+		d := 0.5 * (far + near)
+		at := spinodal - sign*math.Exp(d)
+		v, slope := psi(at)
+		if v > ψ {
+			x, ψ = at, v
+		}
+		if sign*slope > 0 {
+			far = d
+		} else {
+			near = d
+		}
+	}
+	return x, ψ
+}
+
+// checkTarget refuses a target that no flux can meet: of a volume, time or rate that
+// is not positive and finite.
+func (f *Fluid) checkTarget(t Target) error {
+	if math.Abs(t.LnJ) <= math.MaxFloat64 {
+		return nil
+	}
+	return &eos.DomainError{Fluid: f.name, Equation: f.source(), Quantity: "kinetic limit", Argument: "ln of the target flux", Value: t.LnJ, Lo: math.Inf(-1), Hi: math.Inf(1), Unit: "(of m-3.s-1)"}
 }
 
 // firstGuess is a temperature near which organic liquids reach a threshold of
@@ -186,10 +268,13 @@ func (f *Fluid) hottest(P float64) (T float64, spinodal bool) {
 	return T * (1 - 1e-11), spinodal
 }
 
-func (f *Fluid) noLimit(P float64, t Target, end float64, spinodal bool) error {
+// noLimit is the error of a flux that does not reach the target up to end; top is
+// where it comes closest.
+func (f *Fluid) noLimit(P float64, t Target, end, top float64, spinodal bool) error {
 	e := &NoLimitError{Fluid: f.name, Given: P, Threshold: t.LnJ / math.Ln10, End: end, Spinodal: spinodal}
-	if x, err := f.Flux(end, P); err == nil {
-		e.Reached, e.Known = x.Log10J(), true
+	var p point
+	if f.evaluate(top, P, &p) == fine && p.excess > 0 {
+		e.Reached, e.Known, e.Threshold = p.lnJ()/math.Ln10, true, f.wanted(&p, t)/math.Ln10
 	}
 	return e
 }
@@ -200,7 +285,9 @@ func (f *Fluid) wanted(p *point, t Target) float64 {
 	if !t.PerKelvin {
 		return t.LnJ
 	}
-	s := p.lnJSlope()
+	// A hair below the spinodal the density of the liquid, and with it J, falls as the root of
+	// the distance; a target that follows would be met by a slope going to zero.
+	s := math.Max(p.lnJSlope(), -0.5*p.total(&p.dbarrier))
 	if !(s > 1e-3) || !(p.excess > 0) {
 		s = 1e-3 // not yet near a limit; any positive slope will do to get there
 	}
@@ -264,11 +351,20 @@ func (f *Fluid) limitAt(p *point, t Target, evaluations int, atT bool) (Limit, e
 
 // slopeGradient returns the derivatives of ln(∂lnJ/∂T) with respect to T, P and
 // the parameters, by central differences in T of the analytic first derivatives.
-// A step of 1e-5·T leaves a relative error of (1e-5·T·d/dT)² ~ 1e-7 at worst.
+// A step of 1e-5·T leaves a relative error of (1e-5·T·d/dT)² ~ 1e-7 at worst. Where
+// the spinodal is closer than that the liquid changes as the root of the distance to
+// it, and the step is made small against the distance.
 func (f *Fluid) slopeGradient(p *point) (dT, dP float64, g Gradient, err error) {
-	h := 1e-5 * p.T
 	var up, down point
 	up.xl, up.xv, down.xl, down.xv = p.xl, p.xv, p.xl, p.xv
+	h := 1e-5 * p.T
+	beyond := false
+	for f.evaluate(p.T+h, p.P, &up) != fine && h > 1e-12*p.T {
+		h, beyond = h/16, true
+	}
+	if beyond {
+		h /= 16
+	}
 	hi, lo := p.T+h, p.T-h
 	if f.evaluate(hi, p.P, &up) != fine {
 		up, hi = *p, p.T // one-sided against the spinodal
@@ -299,6 +395,9 @@ func (f *Fluid) slopeGradient(p *point) (dT, dP float64, g Gradient, err error) 
 //
 // Errors: as KineticLimit.
 func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, error) {
+	if err := f.checkTarget(t); err != nil {
+		return Limit{}, err
+	}
 	if !(T >= f.tlo && T < f.thi) {
 		return Limit{}, f.explain(outsideRange, T, 0)
 	}
@@ -316,6 +415,7 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 	}
 	hi := ps
 	var p point
+	var line secant
 	proven := !isSpinodal
 	P := guess
 	if P == 0 || !(P > lo && P < hi) {
@@ -333,7 +433,7 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 			} else {
 				hi = P
 			}
-			next = P - ψ/slope
+			next = P - ψ/line.slope(&t, P, ψ, slope)
 			if math.Abs(next-P) <= t.tolerance()*(math.Abs(P)+p.excess) {
 				if f.evaluate(T, next, &p) == fine && p.excess > 0 {
 					return f.limitAt(&p, t, i+1, true)
@@ -350,10 +450,17 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 			if !proven {
 				end := lo + 1e-10*math.Abs(hi-lo)
 				if f.evaluate(T, end, &p) == fine {
-					if ψ, _ := f.psi(&p, t, true); ψ < 0 {
+					ψ, _ := f.psi(&p, t, true)
+					if ψ < 0 {
+						end, ψ = f.peak(hi, end, func(P float64) (float64, float64) { return f.psiAt(T, P, t, true) })
+						if ψ >= 0 {
+							lo = end
+						}
+					}
+					if ψ < 0 {
 						e := &NoLimitError{Fluid: f.name, Given: T, AtT: true, Threshold: t.LnJ / math.Ln10, End: lo, Spinodal: true}
 						if p.excess > 0 {
-							e.Reached, e.Known = p.lnJ()/math.Ln10, true
+							e.Reached, e.Known, e.Threshold = p.lnJ()/math.Ln10, true, f.wanted(&p, t)/math.Ln10
 						}
 						return Limit{}, e
 					}
@@ -369,7 +476,7 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 				next = lo + 0.5*(hi-lo)
 			}
 		}
-		if hi-lo <= 4e-15*math.Max(math.Abs(lo), math.Abs(hi)) {
+		if w := hi - lo; w <= 4e-15*math.Max(math.Abs(lo), math.Abs(hi)) && !math.IsInf(w, 1) {
 			return Limit{}, &ConvergenceError{Fluid: f.name, Given: T, AtT: true, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
 		}
 		P = next

@@ -41,9 +41,18 @@ func legendre(n int) (x, w []float64) {
 	return x, w
 }
 
+// largestW is the barrier above which ln(J/J_closed) is continued as 1/W: the next
+// term is below 1e-6 of it, and the peak would become too narrow for steps of ρ.
+const largestW = 1e6
+
 // stepwiseFactor returns ln(J/J_closed) and its derivatives with respect to W
 // and to x = P_l/P_v, −2 < x < 1.
 func stepwiseFactor(W, x float64) (ln, dW, dx float64) {
+	if W > largestW {
+		k := largestW / W
+		ln, _, dx = stepwiseSum(largestW, x, stepwiseX, stepwiseW)
+		return k * ln, -k * ln / W, k * dx
+	}
 	return stepwiseSum(W, x, stepwiseX, stepwiseW)
 }
 
