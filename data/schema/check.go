@@ -30,7 +30,7 @@ func (c *compiled) check(document any) []Problem {
 		}
 		return out[i].Message() < out[j].Message()
 	})
-	return slices.Compact(out)
+	return out
 }
 
 // collect takes the leaves of a tree of errors.

@@ -120,6 +120,7 @@ var mutations = []struct{ name, old, new, want string }{
 	{"variance", `[0.25],`, `[0.26],`, "/covariance/lower_triangle/0/0: found 0.26, expected the square of the standard uncertainty 0.5"},
 	{"negative variance", `[0.25],`, `[-0.25],`, "/covariance/lower_triangle/0/0: found -0.25, expected the square of the standard uncertainty 0.5"},
 	{"variance without uncertainty", `[0, 0, 0, 0, 0],`, `[0, 0, 0, 0, 1],`, "/covariance/lower_triangle/4/4: found 1, expected 0, since a parameter of this row or column has no uncertainty"},
+	{"covariance without uncertainty", `[0, 0, 0, 0, 0],`, `[1, 0, 0, 0, 0],`, "/covariance/lower_triangle/4/0: found 1, expected 0, since a parameter of this row or column has no uncertainty"},
 	{"correlation above one", `[0.00375, 0.0001]`, `[0.006, 0.0001]`, "/covariance/lower_triangle: found a matrix with a negative eigenvalue, expected a positive semidefinite one"},
 	{"correlations that contradict", `[0.00375, 0.0001],
       [0.005, 0, 0.0004]`, `[0.00475, 0.0001],
