@@ -42,7 +42,7 @@ func TestZeroResiduals(t *testing.T) {
 }
 
 // An upper bound on y of ½ moves the minimum to the bound: there x solves
-// 200x³ − 99x − 1 = 0 … from d/dx[100(½−x²)²+(1−x)²] = 0, 400x³ − 198x − 2 = 0.
+// d/dx[100(½−x²)²+(1−x)²] = 400x³ − 198x − 2 = 0.
 func TestRosenbrockAtBound(t *testing.T) {
 	p := rosenbrock()
 	p.Params[1].Start, p.Params[1].Lower, p.Params[1].Upper = 0, -1, 0.5
@@ -78,7 +78,7 @@ func TestHeldParameter(t *testing.T) {
 
 var errOutside = errors.New("root of a negative number")
 
-// half has residuals for x ≥ 0 only; the first full step from 3 lands at −3 − …
+// half has residuals for x ≥ 0 only; the first full step from 3 lands below.
 func half(start float64) Problem {
 	return Problem{Params: []Param{{Name: "x", Start: start}}, Size: 2,
 		Residuals: func(dst, θ []float64) error {
@@ -171,7 +171,7 @@ func TestUndetermined(t *testing.T) {
 	}{
 		{5, three, "c has no effect on the value; a and b cannot be told apart", 1},
 		{5, three[:2], "a and b cannot be told apart", 1},
-		{1, three[:2], "1 residuals cannot determine 2 parameters: a and b cannot be told apart", 1},
+		{1, three[:2], "1 residual cannot determine 2 parameters: a and b cannot be told apart", 1},
 	} {
 		r, err := Solve(Problem{Params: tt.params, Size: tt.size, Residuals: sum}, Settings{})
 		if err != nil || !r.Converged {
@@ -206,7 +206,7 @@ func TestWrongDerivativesAreNotConvergence(t *testing.T) {
 		t.Errorf("%+v, %v", r, err)
 	}
 	d, err := CheckDerivatives(p, []float64{-1.2, 1})
-	if err != nil || d.Row != 0 || d.Relative < 1 || d.Given != -d.Given+2*d.Given {
+	if err != nil || d.Row != 0 || d.Relative < 1 || math.Abs(d.Given+d.Numerical) > 1e-6 {
 		t.Errorf("%+v, %v", d, err)
 	}
 }

@@ -121,10 +121,7 @@ const furtherStarts = 10
 // reason is the sentence about how the best search ended.
 func (q *search) reason() string {
 	a := &q.best
-	after := fmt.Sprintf(" after %d iterations", a.iterations)
-	if a.iterations == 1 {
-		after = " after 1 iteration"
-	}
+	after := " after " + count(a.iterations, "iteration")
 	switch a.end {
 	case optimum:
 		return fmt.Sprintf("converged%s: at most %.1g standard errors are left to the optimum", after, math.Max(a.distance, q.s.Tolerance))
@@ -136,7 +133,7 @@ func (q *search) reason() string {
 		return fmt.Sprintf("stopped%s: no step lowers the value, although the derivatives promise one (%.1g standard errors away); they may be wrong or the value not smooth", after, a.distance)
 	}
 	if a.status == optimize.IterationLimit {
-		return fmt.Sprintf("stopped at the limit of %d iterations", q.s.MaxIterations)
+		return "stopped at the limit of " + count(q.s.MaxIterations, "iteration")
 	}
 	return fmt.Sprintf("stopped%s: %v", after, a.status)
 }

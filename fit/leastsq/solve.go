@@ -62,11 +62,11 @@ func Solve(p Problem, s Settings) (*Result, error) {
 	if dof > 0 {
 		factor = g.rss / float64(dof)
 	} else {
-		noFactor = fmt.Sprintf("%d residuals leave no degree of freedom for the spread of %d parameters", p.Size, len(free))
+		noFactor = fmt.Sprintf("the number of residuals, %d, leaves no degree of freedom for their spread beside %s", p.Size, count(len(free), "parameter"))
 	}
 	r.uncertainties(sp, factor, noFactor)
 	if dof < 0 {
-		r.missing(fmt.Sprintf("%d residuals cannot determine %d parameters: %s", p.Size, len(free), r.CovarianceReason))
+		r.missing(fmt.Sprintf("%s cannot determine %d parameters: %s", count(p.Size, "residual"), len(free), r.CovarianceReason))
 	}
 	r.warn(sp)
 	return r, nil
@@ -114,6 +114,14 @@ func Minimize(o Objective, s Settings) (*Result, error) {
 	r.uncertainties(sp, 1, "")
 	r.warn(sp)
 	return r, nil
+}
+
+// count is a number with its noun.
+func count(n int, noun string) string {
+	if n == 1 {
+		return "1 " + noun
+	}
+	return fmt.Sprintf("%d %ss", n, noun)
 }
 
 // wrap adds what the caller's function said.
