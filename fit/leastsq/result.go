@@ -47,9 +47,10 @@ type Result struct {
 	SingularValues []float64
 	Rank           int // singular values above the rounding of the derivatives
 
-	Converged bool   // an optimum was found to Settings.Tolerance or to rounding
-	Usable    bool   // X is finite, between its bounds and not worse than any start
-	Reason    string // why the search ended, one sentence
+	// Converged: X is an optimum to Settings.Tolerance, or to the rounding of the
+	// value. Usable: X is that, or at least lower than the start it came from.
+	Converged, Usable bool
+	Reason            string // why the search ended, one sentence
 	Warnings  []string
 
 	Method      string // the search that found X
