@@ -51,7 +51,7 @@ type Result struct {
 	// value. Usable: X is that, or at least lower than the start it came from.
 	Converged, Usable bool
 	Reason            string // why the search ended, one sentence
-	Warnings  []string
+	Warnings          []string
 
 	Method      string // the search that found X
 	Iterations  int    // accepted steps of all searches
