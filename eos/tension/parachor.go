@@ -30,10 +30,10 @@ type Parachor struct {
 // NewParachor fixes the parachor at tref in K, where the tension is sigma in N/m.
 //
 // Errors: *eos.DomainError when tref is not below the model's critical point;
-// *RangeError when sigma is not positive.
+// *ParameterError when sigma is not positive and finite.
 func NewParachor(m eos.Model, tref, sigma float64) (*Parachor, error) {
 	if !(sigma > 0 && sigma < math.MaxFloat64) {
-		return nil, fmt.Errorf("parachor of %s: surface tension %.6g N/m at the reference temperature is not positive", m.Fluid, sigma)
+		return nil, fmt.Errorf("parachor of %s: %w", m.Fluid, &ParameterError{"parachor", "tension at the reference temperature in N/m", sigma, "> 0 and finite"})
 	}
 	p := &Parachor{model: m, tref: tref, sigma: sigma}
 	var err error
