@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -88,6 +89,16 @@ type Calibration struct {
 // round leaves a few per cent of the error of the last.
 const maxAlternations = 60
 
+// Parameters and spreads have settled when none moves by more than this part of
+// its range in a round. Where the estimate leans on the edge of the region in
+// which every row has a limit, rounds end in a small cycle, and less is asked
+// after some patience.
+const (
+	settled       = 1e-9
+	patience      = 20
+	nearlySettled = 1e-5
+)
+
 // Calibrate tunes the plan's variant to data made by Prepare with the same plan.
 //
 // Errors: *OptionError for a plan that the data cannot serve, *TooFewError,
@@ -118,13 +129,17 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 	if lik.anchors, err = newAnchors(&p, d.Observations, lay); err != nil {
 		return nil, err
 	}
-	c := &Calibration{Plan: p, Data: d, Locations: len(lay.theta), References: lay.references,
-		theta: starts(lay.theta), psi: starts(lay.psi)}
-	if w := o.Warm; w != nil && len(w.theta) == len(c.theta) && len(w.psi) == len(c.psi) {
-		copy(c.theta, w.theta)
-		copy(c.psi, w.psi)
+	c := &Calibration{Plan: p, Data: d, Locations: len(lay.theta), References: lay.references}
+	var covPsi *mat.SymDense
+	if w := o.Warm; w != nil && len(w.theta) == len(lay.theta) && len(w.psi) == len(lay.psi) {
+		c.theta, c.psi = slices.Clone(w.theta), slices.Clone(w.psi)
+		covPsi, err = c.alternate(lik, leastsq.Settings{Local: true})
 	}
-	covPsi, err := c.alternate(lik)
+	if c.theta == nil || err != nil {
+		c.theta, c.psi, c.Warnings = starts(lay.theta), starts(lay.psi), nil
+		copy(lik.guess, startGuesses(d.Observations))
+		covPsi, err = c.alternate(lik, leastsq.Settings{Starts: p.Restarts + 1, Seed: p.Seed})
+	}
 	if err != nil {
 		return nil, err
 	}
@@ -180,10 +195,10 @@ func enough(l *layout, d *Data, p *Plan) error {
 }
 
 // alternate finds θ at given ψ and ψ at given θ in turn.
-func (c *Calibration) alternate(lik *likelihood) (covPsi *mat.SymDense, err error) {
+// settings are those of the first search.
+func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings) (covPsi *mat.SymDense, err error) {
 	variance := make([]float64, len(lik.obs))
 	c.Converged, c.Usable = true, true
-	settings := leastsq.Settings{Starts: c.Plan.Restarts + 1, Seed: c.Plan.Seed}
 	if err := lik.evaluate(c.theta); err != nil {
 		return nil, &ConvergenceError{c.Plan.Variant.Name(), "the start values have no prediction: " + err.Error(), err}
 	}
@@ -198,13 +213,16 @@ func (c *Calibration) alternate(lik *likelihood) (covPsi *mat.SymDense, err erro
 			if err != nil {
 				return nil, &ConvergenceError{c.Plan.Variant.Name(), err.Error(), err}
 			}
-			settings = leastsq.Settings{}
 			copy(c.theta, res.X)
 			c.Evaluations += res.Evaluations
 			c.Converged, c.Usable, c.Reason = res.Converged, res.Usable, res.Reason
-			if !res.Usable {
+			// A search that cannot leave its start is a failure from the start values,
+			// but not from where an earlier search ended: that point has a kink.
+			c.Usable = c.Usable || round > 0 || settings.Local
+			if !c.Usable {
 				return nil, &ConvergenceError{c.Plan.Variant.Name(), res.Reason, nil}
 			}
+			settings = leastsq.Settings{Local: true}
 		} else {
 			c.Reason = "no location is free; only the spread was estimated"
 		}
@@ -228,7 +246,10 @@ func (c *Calibration) alternate(lik *likelihood) (covPsi *mat.SymDense, err erro
 			moved = math.Max(moved, change(c.psi, psi, lik.lay.psi))
 			copy(c.psi, psi)
 		}
-		if moved < 1e-9 || round > 0 && len(c.psi) == 0 && moved < 1e-8 {
+		if moved < settled || round >= patience && moved < nearlySettled {
+			if c.Converged {
+				c.Reason = fmt.Sprintf("converged in %d rounds of parameters and spread: %s", round+1, c.Reason)
+			}
 			return covPsi, nil
 		}
 		if round == maxAlternations {

@@ -2,6 +2,7 @@ package fit
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/mat"
 )
@@ -64,6 +65,8 @@ func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense) error {
 	}
 	c.rows(lik, variance)
 	c.Warnings = append(c.Warnings, c.Identity.Warnings...)
+	c.warnEdge(lik)
+	c.warnTension(lik)
 	return nil
 }
 
@@ -122,4 +125,36 @@ func quadratic(c mat.Symmetric, g []float64) float64 {
 		}
 	}
 	return math.Max(0, q)
+}
+
+// warnEdge names the fluids whose flux does not reach its target at the estimates,
+// so that the spinodal stands in for their kinetic limit.
+func (c *Calibration) warnEdge(lik *likelihood) {
+	var names []string
+	for i := range lik.obs {
+		if lik.limit[i].atSpinodal && !slices.Contains(names, lik.obs[i].Record.Key) {
+			names = append(names, lik.obs[i].Record.Key)
+		}
+	}
+	if len(names) > 0 {
+		c.warn("with these parameters the flux of " + join(names) + " does not reach its target before the spinodal, which stands in for the kinetic limit there; predict reports no kinetic limit for such states")
+	}
+}
+
+// warnTension names the fluids whose surface tension fit is used beyond the range
+// that its source states.
+func (c *Calibration) warnTension(lik *likelihood) {
+	if c.Plan.Variant.Limit != Kinetic || c.Plan.Variant.Tension != TensionCorrelation {
+		return
+	}
+	var names []string
+	for i := range lik.obs {
+		r := lik.obs[i].Record
+		if _, hi, ok := r.TensionRange(); ok && lik.limit[i].T > hi && !slices.Contains(names, r.Key) {
+			names = append(names, r.Key)
+		}
+	}
+	if len(names) > 0 {
+		c.warn("the surface tension fit is used above the range that its source states for " + join(names))
+	}
 }

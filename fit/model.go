@@ -1,6 +1,7 @@
 package fit
 
 import (
+	"fmt"
 	"math"
 	"slices"
 	"sort"
@@ -64,7 +65,14 @@ func (c *Calibration) Model() *Model {
 //
 // Errors: *OptionError, *eos.UnknownEquationError.
 func (m *Model) Prepare() error {
-	p, err := Plan{Variant: m.Variant, Fixed: m.Settings, Noise: m.Noise}.Complete()
+	p := Plan{Variant: m.Variant, Fixed: m.Settings, Noise: m.Noise}
+	for _, s := range m.Settings { // the calibration may have had wider bounds than the default ones
+		p.Bounds = append(p.Bounds, Bound{s.Name, math.Min(s.Value, 0) - 1, math.Max(s.Value, 0) + 1})
+		if s.Name == Spread {
+			p.Bounds[len(p.Bounds)-1].Lower = 0
+		}
+	}
+	p, err := p.Complete()
 	if err != nil {
 		return err
 	}
@@ -98,6 +106,9 @@ type Query struct {
 	// Target, if OwnFlux, replaces the threshold.
 	Target  nucleation.Target
 	OwnFlux bool
+	// OrSpinodal lets the spinodal stand in where the flux does not reach its target
+	// before it, instead of an error; the prediction says so.
+	OrSpinodal bool
 }
 
 // Prediction is a predicted limit.
@@ -121,6 +132,7 @@ type Prediction struct {
 	SpinodalT, SaturationT float64
 	HasSpinodal            bool
 	HasSaturation          bool
+	AtSpinodal             bool // the spinodal stands in for a kinetic limit, see Query.OrSpinodal
 	Extrapolated           bool
 	Warnings               []string
 }
@@ -237,20 +249,30 @@ func (m *Model) Predict(q Query) (Prediction, error) {
 			return Prediction{}, err
 		}
 	}
-	l, err := ph.limit(out.Pressure, q.Target, q.OwnFlux, q.Temperature)
+	find := ph.limit
+	if q.OrSpinodal {
+		find = ph.limitOrSpinodal
+	}
+	l, err := find(out.Pressure, q.Target, q.OwnFlux, q.Temperature)
 	if err != nil {
 		return Prediction{}, err
 	}
+	out.AtSpinodal = l.atSpinodal
 	if !q.AtTemperature {
 		out.Temperature = l.T + offset
 	}
 	out.Slope = l.dTdP
-	if m.Variant.Limit == Kinetic {
+	if m.Variant.Limit == Kinetic && !l.atSpinodal {
 		out.Log10Flux, out.HasFlux = l.lnJ/math.Ln10, true
 	}
 	m.uncertainty(&out, &q, &l, &found)
 	if s, err := ph.Model.LiquidSpinodalTemperature(out.Pressure); err == nil {
 		out.SpinodalT, out.HasSpinodal = s.T, true
+	}
+	if r := q.Record; m.Variant.Limit == Kinetic && m.Variant.Tension == TensionCorrelation {
+		if lo, hi, ok := r.TensionRange(); ok && (l.T < lo || l.T > hi) {
+			out.Warnings = append(out.Warnings, fmt.Sprintf("the surface tension fit of %s is stated for %.5g K to %.5g K and used beyond", r.Key, lo, hi))
+		}
 	}
 	out.SaturationT, out.HasSaturation = ph.saturationTemperature(out.Pressure)
 	m.compareRange(&out, &q, &found)

@@ -237,26 +237,21 @@ func groupOf(by By, r *measure.Row) string {
 
 // limitValue is a predicted limit with its derivatives.
 type limitValue struct {
-	T          float64            // K
-	d          [locations]float64 // ∂T/∂location; the offset's is 0
-	dTdP       float64            // K/Pa
-	steepness  float64            // dlnJ/dT, 1/K; 0 for the spinodal
-	lnJ        float64
-	evaluation int
+	T         float64            // K
+	d         [locations]float64 // ∂T/∂location; the offset's is 0
+	dTdP      float64            // K/Pa
+	steepness float64            // dlnJ/dT, 1/K; 0 for the spinodal
+	lnJ       float64
+	// atSpinodal is set where the flux does not reach the target and the spinodal
+	// stands in; lnJ and steepness are then 0.
+	atSpinodal bool
 }
 
 // limit predicts the limit at P for a row target or, without one, the threshold.
 func (ph *Physics) limit(P float64, t nucleation.Target, own bool, guess float64) (limitValue, error) {
 	var l limitValue
 	if ph.Variant.Limit == Spinodal {
-		s, err := ph.Model.LiquidSpinodalTemperature(P)
-		if err != nil {
-			return l, err
-		}
-		dP, tuning := ph.Model.SpinodalGradient(s)
-		l.T, l.dTdP = s.T, dP
-		copy(l.d[2:5], tuning[:])
-		return l, nil
+		return ph.spinodal(P)
 	}
 	if !own {
 		t = nucleation.Threshold(ph.Threshold)
@@ -278,7 +273,7 @@ func (ph *Physics) limit(P float64, t nucleation.Target, own bool, guess float64
 
 // Query asks a model for the limit of the observation.
 func (o *Observation) Query() Query {
-	return Query{Record: o.Record, Pressure: o.Pressure, Method: o.Method, Batch: o.Batch, Target: o.Target, OwnFlux: o.OwnFlux}
+	return Query{Record: o.Record, Pressure: o.Pressure, Method: o.Method, Batch: o.Batch, Target: o.Target, OwnFlux: o.OwnFlux, OrSpinodal: true}
 }
 
 // Limit is the limit at P in Pa at the model's threshold.
@@ -286,4 +281,30 @@ func (o *Observation) Query() Query {
 // Errors: those of nucleation.KineticLimit, or of the spinodal.
 func (ph *Physics) Limit(P float64) (nucleation.Limit, error) {
 	return ph.Fluid.KineticLimit(P, nucleation.Threshold(ph.Threshold), 0)
+}
+
+// spinodal predicts the spinodal temperature at P.
+func (ph *Physics) spinodal(P float64) (limitValue, error) {
+	var l limitValue
+	s, err := ph.Model.LiquidSpinodalTemperature(P)
+	if err != nil {
+		return l, err
+	}
+	dP, tuning := ph.Model.SpinodalGradient(s)
+	l.T, l.dTdP = s.T, dP
+	copy(l.d[2:5], tuning[:])
+	return l, nil
+}
+
+// limitOrSpinodal is limit, except that the spinodal stands in where the flux does
+// not reach its target before it: no liquid lives longer than that. It makes the
+// predicted limit a continuous function of the parameters, so that a search is
+// not stopped by the edge of the region in which every row has a kinetic limit.
+func (ph *Physics) limitOrSpinodal(P float64, t nucleation.Target, own bool, guess float64) (limitValue, error) {
+	l, err := ph.limit(P, t, own, guess)
+	if e, ok := err.(*nucleation.NoLimitError); ok && e.Spinodal {
+		l, err = ph.spinodal(P)
+		l.atSpinodal = true
+	}
+	return l, err
 }

@@ -168,53 +168,96 @@ func isCondition(err error) bool {
 // first, the fourth root for second differences.
 const spreadStep = 2e-4
 
-// estimate minimises A from psi and returns the new spreads, and their
-// covariance from the curvature of A (nil when it is not positive definite).
+// estimate minimises A from psi and returns the new spreads, and their covariance
+// from the curvature of A (nil when it is not positive definite).
+//
+// The search is in the variances w = ψ²: A is even in each spread, so that as a
+// function of ψ it is stationary at zero whether or not the minimum is there.
 func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covariance *mat.SymDense, err error) {
 	k := len(psi)
 	params := make([]leastsq.Param, k)
+	floor := make([]float64, k) // size below which a change of a variance means nothing
 	for i, f := range free {
-		params[i] = leastsq.Param{Name: f.Label(), Start: clamp(psi[i], f.Lower, f.Upper), Lower: f.Lower, Upper: f.Upper}
+		lo, hi := f.Lower*f.Lower, f.Upper*f.Upper
+		w := psi[i] * psi[i]
+		params[i] = leastsq.Param{Name: f.Label(), Start: clamp(w, lo, hi), Lower: lo, Upper: hi, Scale: math.Max(w, 1e-4*f.Start*f.Start)}
+		floor[i] = 1e-3 * math.Max(lo, z.typicalVariance())
+		if f.Role == RolePoolSpread {
+			floor[i] = math.Max(lo, 1e-6*f.Start*f.Start)
+		}
 	}
-	eval := func(x, grad []float64, curv *mat.SymDense) (float64, error) {
-		v, ok := z.adjusted(x)
+	eval := func(w, grad []float64, curv *mat.SymDense) (float64, error) {
+		v, ok := z.adjusted(roots(w))
 		if !ok {
 			return 0, errSingular
 		}
 		if grad == nil && curv == nil {
 			return v, nil
 		}
-		return v, z.differences(x, v, grad, curv)
+		return v, z.differences(w, v, floor, grad, curv)
 	}
-	res, err := leastsq.Minimize(leastsq.Objective{Params: params, Size: len(z.l.obs), Eval: eval}, leastsq.Settings{})
+	res, err := leastsq.Minimize(leastsq.Objective{Params: params, Size: len(z.l.obs), Eval: eval}, leastsq.Settings{Local: true})
 	if err != nil {
 		return nil, nil, err
 	}
-	h := mat.NewSymDense(k, nil)
-	g := make([]float64, k)
-	if err := z.hessian(res.X, res.Value, g, h); err == nil {
-		var c mat.Cholesky
-		if c.Factorize(h) {
-			covariance = mat.NewSymDense(k, nil)
-			if err := c.InverseTo(covariance); err != nil && !isCondition(err) {
-				covariance = nil
+	x = roots(res.X)
+	g, h := make([]float64, k), mat.NewSymDense(k, nil)
+	if err := z.hessian(res.X, res.Value, floor, g, h); err != nil {
+		return x, nil, nil
+	}
+	// From variances to spreads: w = ψ², dw = 2ψ dψ.
+	for i := range k {
+		for j := i; j < k; j++ {
+			v := 4 * x[i] * x[j] * h.At(i, j)
+			if i == j {
+				v += 2 * g[i]
 			}
+			h.SetSym(i, j, v)
+		}
+		if x[i] <= free[i].Lower || x[i] >= free[i].Upper { // known, as far as the others are concerned
+			for j := range k {
+				h.SetSym(i, j, 0)
+			}
+			h.SetSym(i, i, 1)
 		}
 	}
-	return res.X, covariance, nil
+	var c mat.Cholesky
+	if c.Factorize(h) {
+		covariance = mat.NewSymDense(k, nil)
+		if err := c.InverseTo(covariance); err != nil && !isCondition(err) {
+			covariance = nil
+		}
+	}
+	return x, covariance, nil
 }
 
-// differences fills gradient and a positive curvature of A by central differences.
-func (z *linearised) differences(x []float64, v float64, grad []float64, curv *mat.SymDense) error {
-	k := len(x)
+// typicalVariance is the mean square of the residuals, the size on which
+// variances are to be seen.
+func (z *linearised) typicalVariance() float64 {
+	s := 0.0
+	for _, r := range z.r {
+		s += r * r
+	}
+	return s/float64(len(z.r)) + 1e-12
+}
+
+func roots(w []float64) []float64 {
+	x := make([]float64, len(w))
+	for i := range w {
+		x[i] = math.Sqrt(math.Max(0, w[i]))
+	}
+	return x
+}
+
+// differences fills gradient and a positive curvature of A by differences.
+func (z *linearised) differences(w []float64, v float64, floor, grad []float64, curv *mat.SymDense) error {
+	k := len(w)
 	h := mat.NewSymDense(k, nil)
 	g := make([]float64, k)
-	if err := z.hessian(x, v, g, h); err != nil {
+	if err := z.hessian(w, v, floor, g, h); err != nil {
 		return err
 	}
-	if grad != nil {
-		copy(grad, g)
-	}
+	copy(grad, g)
 	if curv == nil {
 		return nil
 	}
@@ -231,28 +274,41 @@ func (z *linearised) differences(x []float64, v float64, grad []float64, curv *m
 	return nil
 }
 
-// hessian fills the gradient and the Hessian of A at x by central differences. A
-// is even in each spread, so steps may pass zero.
-func (z *linearised) hessian(x []float64, v float64, g []float64, h *mat.SymDense) error {
-	k := len(x)
+// varianceStep is the relative step of the differences of A in the variances:
+// small enough that third derivatives do not matter, large enough that the
+// rounding of A (some 1e-13) does not either.
+const varianceStep = 1e-3
+
+// hessian fills the gradient and the Hessian of A at the variances w by central
+// differences; the centre is moved up by one step where it stands at zero.
+func (z *linearised) hessian(w []float64, v float64, floor, g []float64, h *mat.SymDense) error {
+	k := len(w)
 	step := make([]float64, k)
-	for i := range x {
-		step[i] = spreadStep * math.Max(math.Abs(x[i]), 1e-3)
+	centre := append([]float64(nil), w...)
+	moved := false
+	for i := range w {
+		step[i] = varianceStep * math.Max(w[i], floor[i])
+		if centre[i] < step[i] {
+			centre[i], moved = step[i], true
+		}
 	}
 	at := func(i int, si float64, j int, sj float64) (float64, error) {
-		y := append([]float64(nil), x...)
+		y := append([]float64(nil), centre...)
 		y[i] += si * step[i]
 		if j >= 0 {
 			y[j] += sj * step[j]
 		}
-		for m := range y {
-			y[m] = math.Abs(y[m])
-		}
-		a, ok := z.adjusted(y)
+		a, ok := z.adjusted(roots(y))
 		if !ok {
 			return 0, errSingular
 		}
 		return a, nil
+	}
+	if moved {
+		var err error
+		if v, err = at(0, 0, -1, 0); err != nil {
+			return err
+		}
 	}
 	for i := range k {
 		up, err := at(i, 1, -1, 0)

@@ -46,10 +46,17 @@ func newSystem(p *Plan, obs []Observation, l *layout, workers int) *system {
 	}
 	s := &system{plan: p, obs: obs, lay: l, workers: workers,
 		limit: make([]limitValue, len(obs)), guess: make([]float64, len(obs)), cells: make([]*Physics, len(l.cells))}
-	for i := range obs {
-		s.guess[i] = obs[i].Start
-	}
+	copy(s.guess, startGuesses(obs))
 	return s
+}
+
+// startGuesses are the limits at the start values.
+func startGuesses(obs []Observation) []float64 {
+	g := make([]float64, len(obs))
+	for i := range obs {
+		g[i] = obs[i].Start
+	}
+	return g
 }
 
 // evaluate brings the predicted limits to θ.
@@ -75,7 +82,7 @@ func (s *system) evaluate(theta []float64) error {
 		run := func() {
 			for i := lo; i < hi; i++ {
 				o := &s.obs[i]
-				l, err := s.cells[s.lay.cellOf[i]].limit(o.Pressure, o.Target, o.OwnFlux, s.guess[i])
+				l, err := s.cells[s.lay.cellOf[i]].limitOrSpinodal(o.Pressure, o.Target, o.OwnFlux, s.guess[i])
 				if err != nil {
 					failed[w] = &RowError{o.At(), o.Record.Key, err}
 					return

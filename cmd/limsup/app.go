@@ -45,7 +45,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Action:                    noCommand,
 		CommandNotFound:           nil,
 		Commands: []*cli.Command{
-			checkCommand(), calibrateCommand(), predictCommand(),
+			checkCommand(), calibrateCommand(), validateCommand(), compareCommand(), predictCommand(),
 			fluidsCommand(), isothermCommand(), embryoCommand(), fluxCommand(),
 		},
 	}

@@ -1,10 +1,12 @@
 package main
 
 import (
+	"cmp"
 	"fmt"
 	"io"
 	"math"
 	"path/filepath"
+	"slices"
 
 	"github.com/urfave/cli/v2"
 
@@ -23,7 +25,7 @@ func calibrateCommand() *cli.Command {
 			"Examples: limsup calibrate --data drops.csv --out lab.json\n" +
 			"          limsup calibrate --data drops.csv --tune threshold --tune slope/fluid --anchor vapour-pressure=1%",
 		Flags: flags([]cli.Flag{dataFlag()}, tuneFlags(), []cli.Flag{
-			&cli.StringFlag{Name: "folds", Usage: "what cross-validation leaves out at a time: `KIND` rows, fluid, method, batch, pressure, or a number of parts (default: fluid, or rows with one fluid)"},
+			&cli.StringFlag{Name: "folds", Usage: "what cross-validation leaves out at a time: `KIND` rows, fluid, method, batch, pressure, a number of parts, or none (default: fluid, or rows with one fluid)"},
 			&cli.BoolFlag{Name: "rows", Usage: "print the residual of every row"},
 		}, variantFlags(), []cli.Flag{formatFlag(), seedFlag(), outFlag("the model")}),
 		Action: func(c *cli.Context) error {
@@ -195,7 +197,7 @@ func (r *calibration) product(out string, rows bool) *product {
 	if r.cv != nil {
 		p.blocks = append(p.blocks, block{table: r.cvTable()})
 	}
-	p.blocks = append(p.blocks, block{table: r.effectsTable()})
+	p.blocks = append(p.blocks, r.effectsBlock())
 	if rows {
 		p.blocks = append(p.blocks, block{table: r.rowTable()})
 	}
@@ -311,9 +313,20 @@ func foldWord(f *validate.Folds) string {
 	return "one of " + f.Kind + " parts at a time"
 }
 
-func (r *calibration) effectsTable() *table.Table {
-	t := &table.Table{Title: "Side effects of tuning on the equation", Columns: []table.Column{
-		{Name: "fluid", Title: "fluid"}, {Name: "state", Title: ""},
+// effectsShown is the number of fluids in the table of side effects on the screen.
+const effectsShown = 6
+
+// effectsBlock says what tuning did to the equation of state.
+func (r *calibration) effectsBlock() block {
+	changed := false
+	for _, e := range r.effects {
+		changed = changed || e.Before != e.After
+	}
+	if !changed {
+		return block{text: "Side effects: none; tuning left the equation of state as published."}
+	}
+	t := &table.Table{Title: "Side effects of tuning on the equation of state", Columns: []table.Column{
+		{Name: "fluid", Title: "fluid"}, {Name: "state", Title: "state"},
 		{Name: "critical_temperature", Title: "Tc", Unit: "K", Kind: table.KindNumber, Digits: 2, Fixed: true},
 		{Name: "critical_pressure", Title: "Pc", Unit: "kPa", Kind: table.KindNumber, Digits: 1, Fixed: true},
 		{Name: "vapour_pressure_mean", Title: "Psat mean", Unit: "%", Kind: table.KindNumber, Digits: 2, Fixed: true, Priority: 1},
@@ -321,15 +334,16 @@ func (r *calibration) effectsTable() *table.Table {
 		{Name: "liquid_density_mean", Title: "ρ mean", Unit: "%", Kind: table.KindNumber, Digits: 2, Fixed: true, Priority: 1},
 		{Name: "liquid_density_largest", Title: "ρ largest", Unit: "%", Kind: table.KindNumber, Digits: 2, Fixed: true},
 	}, Notes: []string{"Deviations of saturation pressure and saturated liquid density from the fluid's own correlations, 0.6 to 0.95 Tc: mean of absolute values, and the largest."}}
-	changed := false
-	for _, e := range r.effects {
-		changed = changed || e.Before != e.After
+	shown := slices.Clone(r.effects)
+	if len(shown) > effectsShown+1 {
+		slices.SortStableFunc(shown, func(a, b fit.SideEffect) int {
+			return cmp.Compare(math.Abs(b.After.VapourPressureMax), math.Abs(a.After.VapourPressureMax))
+		})
+		shown = shown[:effectsShown]
+		t.Notes = append(t.Notes, fmt.Sprintf("The %d fluids with the largest deviation after tuning; --format json has all %d.", effectsShown, len(r.effects)))
 	}
-	for _, e := range r.effects {
+	for _, e := range shown {
 		for i, s := range []fit.Saturated{e.Before, e.After} {
-			if i == 1 && !changed {
-				continue
-			}
 			cell := func(v float64) table.Cell {
 				if e.Points == 0 {
 					return table.Missing("no correlation")
@@ -340,10 +354,7 @@ func (r *calibration) effectsTable() *table.Table {
 				cell(s.VapourPressureMean), cell(s.VapourPressureMax), cell(s.LiquidDensityMean), cell(s.LiquidDensityMax)})
 		}
 	}
-	if !changed {
-		t.Title = "Side effects of tuning on the equation: none, the equation is as published"
-	}
-	return t
+	return block{table: t}
 }
 
 func (r *calibration) rowTable() *table.Table {

@@ -30,6 +30,10 @@ func calibrate(set *measure.Set, lib *fluid.Library, plan fit.Plan, folds string
 	if !explicit {
 		folds = validate.DefaultFolds(d.Observations)
 	}
+	if folds == "none" {
+		r.noCV = "cross-validation was not asked for"
+		return r, nil
+	}
 	f, err := validate.NewFolds(folds, d.Observations, plan.Seed)
 	if err == nil {
 		r.cv, err = validate.CrossValidate(d, plan, f, c)

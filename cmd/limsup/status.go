@@ -49,7 +49,7 @@ func status(err error) int {
 		is[*eos.PhaseError](err), is[*fit.ConvergenceError](err):
 		return statusNoAnswer
 	case is[*usageError](err), is[*measure.Problem](err), is[measure.Problems](err), is[*quantity.Error](err),
-		is[*fluid.UnknownError](err), is[*fluid.MissingError](err), is[*fluid.RangeError](err), is[*fluid.Problem](err), is[*modelfile.InvalidError](err),
+		is[*fluid.UnknownError](err), is[*fluid.MissingError](err), is[*fluid.RangeError](err), is[*fluid.Problem](err), is[*modelfile.InvalidError](err), is[*modelfile.SyntaxError](err), is[*tension.ParameterError](err),
 		is[*tension.RangeError](err), is[*fit.OptionError](err), is[*fit.TooFewError](err), is[*fit.UnavailableError](err),
 		is[*eos.DomainError](err), is[*eos.ParameterError](err), is[*eos.UnknownEquationError](err),
 		is[*atomicfile.WriteError](err), is[*fs.PathError](err):
