@@ -217,7 +217,7 @@ func (f *Fluid) peak(inside, spinodal float64, psi func(x float64) (ψ, slope fl
 	far, near := math.Log(width), math.Log(width*1e-9)
 	x = spinodal
 	ψ = math.Inf(-1)
-	for range 50 {
+	for range 28 {
 		d := 0.5 * (far + near)
 		at := spinodal - sign*math.Exp(d)
 		v, slope := psi(at)
