@@ -4,7 +4,6 @@ import (
 	"errors"
 	"fmt"
 	"math"
-	"slices"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -130,15 +129,19 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 		return nil, err
 	}
 	c := &Calibration{Plan: p, Data: d, Locations: len(lay.theta), References: lay.references}
-	var covPsi *mat.SymDense
-	if w := o.Warm; w != nil && len(w.theta) == len(lay.theta) && len(w.psi) == len(lay.psi) {
-		c.theta, c.psi = slices.Clone(w.theta), slices.Clone(w.psi)
-		covPsi, err = c.alternate(lik, leastsq.Settings{Local: true})
+	settings := leastsq.Settings{Starts: p.Restarts + 1, Seed: p.Seed}
+	c.theta, c.psi = starts(lay.theta), starts(lay.psi)
+	if o.Warm != nil {
+		// Near an earlier answer a local search is enough.
+		o.Warm.seed(lay.theta, c.theta)
+		o.Warm.seed(lay.psi, c.psi)
+		settings = leastsq.Settings{Local: true}
 	}
-	if c.theta == nil || err != nil {
+	covPsi, err := c.alternate(lik, settings)
+	if err != nil && o.Warm != nil {
 		c.theta, c.psi, c.Warnings = starts(lay.theta), starts(lay.psi), nil
 		copy(lik.guess, startGuesses(d.Observations))
-		covPsi, err = c.alternate(lik, leastsq.Settings{Starts: p.Restarts + 1, Seed: p.Seed})
+		covPsi, err = c.alternate(lik, leastsq.Settings{})
 	}
 	if err != nil {
 		return nil, err
@@ -147,6 +150,19 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 		return nil, err
 	}
 	return c, nil
+}
+
+// seed copies the estimates of c into x for the parameters that both have.
+func (c *Calibration) seed(free []Free, x []float64) {
+	at := make(map[string]float64, len(c.Parameters))
+	for i := range c.Parameters {
+		at[c.Parameters[i].Label()] = c.Parameters[i].Value
+	}
+	for i := range free {
+		if v, ok := at[free[i].Label()]; ok {
+			x[i] = clamp(v, free[i].Lower, free[i].Upper)
+		}
+	}
 }
 
 // firstReason quotes an exclusion where it explains why nothing is left.
