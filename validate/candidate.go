@@ -20,8 +20,7 @@ type Candidate struct {
 
 // DefaultCandidates is the grid that is compared when none is chosen: every equation
 // with a kinetic limit, the other ways to surface tension and properties for the
-// default equation, the spinodals, and threshold with slope for the default equation.
-// noise and seed hold for all.
+// default equation, three spinodals, and threshold with slope for the default equation.
 func DefaultCandidates() []Candidate {
 	var out []Candidate
 	add := func(v fit.Variant, terms ...fit.Term) {

@@ -43,7 +43,7 @@ const (
 type Entry struct {
 	Name string // unique
 	Kind EntryKind
-	Note string // what a baseline is
+	Note string // what a baseline is, or how a search was started
 
 	Plan        fit.Plan         // not of a baseline
 	Calibration *fit.Calibration // on all common rows; nil for a baseline
@@ -94,8 +94,10 @@ type Comparison struct {
 // member is a candidate on its way.
 type member struct {
 	Candidate
-	name string
-	data *fit.Data
+	name    string
+	untuned string // name of the untuned form of a tuned one
+	note    string
+	data    *fit.Data
 }
 
 // Compare tunes every candidate to the rows that all of them can predict, predicts each
@@ -125,9 +127,6 @@ func Compare(ctx context.Context, set *measure.Set, lib *fluid.Library, o Compar
 	if c.Folds, err = NewFolds(o.Folds, c.Observations, o.Seed); err != nil {
 		return nil, err
 	}
-	if members, err = withUntuned(members); err != nil {
-		return nil, err
-	}
 	c.evaluate(ctx, members, o)
 	c.addBaselines()
 	if len(c.Entries) == 0 {
@@ -148,25 +147,14 @@ type rowPlace struct {
 // common finds the rows that the candidates have in common, and sets aside those that
 // would leave too few.
 func (c *Comparison) common(set *measure.Set, lib *fluid.Library, o CompareOptions) ([]member, error) {
-	var members []member
-	usable := map[rowPlace]int{}
-	names := map[string]bool{}
-	for _, k := range o.Candidates {
-		d, err := fit.Prepare(set, lib, k.Plan)
-		if err != nil {
-			return nil, err
-		}
-		if k, err = k.resolve(len(d.Observations) > 0 && d.OwnFlux() == len(d.Observations)); err != nil {
-			return nil, err
-		}
-		m := member{Candidate: k, name: k.name(), data: d}
-		if names[m.name] {
-			continue
-		}
-		names[m.name] = true
-		members = append(members, m)
-		for i := range d.Observations {
-			usable[placeOf(&d.Observations[i].Row)] = 0
+	members, err := prepare(set, lib, o.Candidates)
+	if err != nil {
+		return nil, err
+	}
+	usable := map[rowPlace]int{} // rows that any can predict, with the number of the kept that can
+	for _, m := range members {
+		for i := range m.data.Observations {
+			usable[placeOf(&m.data.Observations[i].Row)] = 0
 		}
 	}
 	kept := members[:0]
@@ -236,25 +224,6 @@ func (c *Comparison) exclude(set *measure.Set, kept []member, shared func(*measu
 	}
 }
 
-// withUntuned puts the untuned form of each candidate before it.
-func withUntuned(members []member) ([]member, error) {
-	var out []member
-	names := map[string]bool{}
-	for _, m := range members {
-		u, err := m.untuned()
-		if err != nil {
-			return nil, err
-		}
-		for _, x := range []member{{u, u.name(), m.data}, m} {
-			if !names[x.name] {
-				names[x.name] = true
-				out = append(out, x)
-			}
-		}
-	}
-	return out, nil
-}
-
 // evaluate tunes and cross-validates the members, in parallel, each into its own element.
 func (c *Comparison) evaluate(ctx context.Context, members []member, o CompareOptions) {
 	tuned := 0
@@ -316,15 +285,9 @@ func (c *Comparison) entry(ctx context.Context, m *member, tick func()) (*Entry,
 	if err != nil {
 		return nil, err
 	}
-	e := &Entry{Name: m.name, Kind: KindTuned, Plan: m.Plan, Calibration: cal, RMSE: cal.RMSE, K: parameters(cal) + 1}
+	e := &Entry{Name: m.name, Kind: KindTuned, Note: m.note, UntunedName: m.untuned, Plan: m.Plan, Calibration: cal, RMSE: cal.RMSE, K: parameters(cal) + 1}
 	if m.UntunedOnly {
 		e.Kind = KindUntuned
-	} else {
-		u, err := m.untuned()
-		if err != nil {
-			return nil, err
-		}
-		e.UntunedName = u.name()
 	}
 	if e.CV, err = crossValidate(ctx, m.data, m.Plan, c.Folds, cal, tick); err != nil {
 		return nil, err

@@ -120,7 +120,7 @@ func (c *Comparison) choose(out *Nested, inner [][][]float64, barred map[[2]int]
 	rules := Comparison{Observations: c.Observations, Folds: c.Folds}
 	rules.addBaselines()
 	count := map[string]int{}
-	chosen := scores{folds: len(c.Folds.Names)}
+	residuals := make([]func(row, boiled int) float64, len(c.Folds.Names))
 	for k := range c.Folds.Names {
 		best, name := math.Inf(1), ""
 		var of func(row, boiled int) float64
@@ -145,12 +145,15 @@ func (c *Comparison) choose(out *Nested, inner [][][]float64, barred map[[2]int]
 			continue
 		}
 		count[name]++
-		c.eachBoiled(func(row, boiled int) {
-			if c.Folds.Of[row] == k {
-				chosen.e, chosen.fold = append(chosen.e, of(row, boiled)), append(chosen.fold, k)
-			}
-		})
+		residuals[k] = of
 	}
+	chosen := scores{folds: len(c.Folds.Names)}
+	c.eachBoiled(func(row, boiled int) {
+		k := c.Folds.Of[row]
+		if of := residuals[k]; of != nil {
+			chosen.e, chosen.fold = append(chosen.e, of(row, boiled)), append(chosen.fold, k)
+		}
+	})
 	out.RMSE = rmse(chosen.e)
 	out.SE, _ = chosen.differenceSE(nil)
 	winner := math.Inf(1)
@@ -194,7 +197,15 @@ func (c *Comparison) eachBoiled(visit func(row, boiled int)) {
 
 // Sentence says what the outer loop found.
 func (n *Nested) Sentence() string {
-	s := fmt.Sprintf("Choosing the best and then tuning it errs by %.3g K ± %.2g K on rows that neither choice nor tuning had seen, %+.2g K against the winner's own figure.", n.RMSE, n.SE, n.Optimism)
+	s := fmt.Sprintf("Choosing the best and then tuning it errs by %.3g K ± %.2g K on rows that neither choice nor tuning had seen, ", n.RMSE, n.SE)
+	switch {
+	case n.Optimism > 0:
+		s += fmt.Sprintf("%.2g K more than the winner's own figure.", n.Optimism)
+	case n.Optimism < 0:
+		s += fmt.Sprintf("%.2g K less than the winner's own figure.", -n.Optimism)
+	default:
+		s += "as much as the winner's own figure."
+	}
 	if n.Failed > 0 {
 		s += fmt.Sprintf(" %d tunings without two folds gave no prediction; their variants were not chosen there.", n.Failed)
 	}

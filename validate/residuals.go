@@ -73,7 +73,7 @@ func Assess(c *fit.Calibration, cv *CrossValidation) *Assessment {
 	for i := range c.Rows {
 		x := &c.Rows[i]
 		r := Residual{Index: i, Predicted: x.Predicted, Residual: x.Residual, Leverage: x.Leverage, HasLeverage: true,
-			Intact: c.Data.Observations[i].Outcome != measure.Boiled, Log10Flux: x.Log10Flux, HasFlux: c.Plan.Variant.Limit == fit.Kinetic}
+			Intact: c.Data.Observations[i].Outcome != measure.Boiled, Log10Flux: x.Log10Flux, HasFlux: x.Log10Flux != 0}
 		r.U = math.Sqrt(x.Variance)
 		r.HasU = r.U > 0
 		if cv != nil {
