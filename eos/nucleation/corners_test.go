@@ -244,14 +244,25 @@ func TestPeak(t *testing.T) {
 	if !(peak-end > 1e-4) {
 		t.Fatalf("ln J peaks at %g, %g at the spinodal: nothing to tell apart", peak, end)
 	}
-	target := Target{LnJ: end + 0.9*(peak-end)}
-	l, err := f.KineticLimit(atmosphere, target, 0)
-	if err != nil || !(l.DT > 0) || math.Abs(l.LnJ-target.LnJ) > 1e-8 {
-		t.Fatalf("limit %+v, %v; want ln J = %g on the rising side", l, err, target.LnJ)
-	}
-	p, err := f.KineticPressure(l.T, target, 0)
-	if err != nil || math.Abs(p.P-atmosphere) > 1e-3*atmosphere || !(p.DP < 0) {
-		t.Fatalf("pressure %+v, %v; want %d Pa", p, err, atmosphere)
+	for _, part := range []float64{0.05, 0.3, 0.6, 0.9, 0.99} {
+		target := Target{LnJ: end + part*(peak-end)}
+		for _, guess := range []float64{0, 300, s.T - 0.1, s.T - 1e-3, s.T - 1e-5, s.T - 1e-7, s.T + 1} {
+			l, err := f.KineticLimit(atmosphere, target, guess)
+			if err != nil || !(l.DT > 0) || math.Abs(l.LnJ-target.LnJ) > 1e-8 {
+				t.Fatalf("limit %+v, %v; want ln J = %g on the rising side", l, err, target.LnJ)
+			}
+			edge, _, err := m.Spinodal(l.T)
+			if err != nil {
+				t.Fatal(err)
+			}
+			for _, above := range []float64{0, 1e-6, 1e-3, 0.1, 1, 1e4} { // Pa
+				p, err := f.KineticPressure(l.T, target, edge.P+above)
+				// a hundredth of the way from the spinodal, for the roots are nearly double
+				if err != nil || math.Abs(p.P-atmosphere) > 1e-2*(atmosphere-edge.P) || !(p.DP < 0) {
+					t.Fatalf("pressure %+v from %g Pa above the spinodal, %v; want %d Pa", p, above, err, atmosphere)
+				}
+			}
+		}
 	}
 	over, err := f.KineticLimit(atmosphere, Target{LnJ: peak + 1e-3}, 0)
 	var no *NoLimitError
