@@ -3,6 +3,7 @@ package main
 import (
 	"fmt"
 	"math"
+	"slices"
 	"sort"
 	"strings"
 
@@ -160,21 +161,30 @@ func checkProduct(d *fit.Data) *product {
 		}
 		files = append(files, s)
 	}
-	t := &table.Table{Title: fmt.Sprintf("Usable rows (%d)", len(d.Observations)), Columns: []table.Column{
+	title := fmt.Sprintf("Usable rows (%d)", len(d.Observations))
+	t := &table.Table{Title: title, Columns: []table.Column{
 		{Name: "fluid", Title: "fluid"}, {Name: "method", Title: "method"},
 		{Name: "rows", Title: "rows", Kind: table.KindInteger},
 		{Name: "intact", Title: "intact", Kind: table.KindInteger, Priority: 3},
 		{Name: "own_flux", Title: "own flux", Kind: table.KindInteger, Priority: 2},
-		{Name: "pressure_low", Title: "P from", Unit: "kPa", Kind: table.KindNumber, Digits: 5},
-		{Name: "pressure_high", Title: "to", Unit: "kPa", Kind: table.KindNumber, Digits: 5},
-		{Name: "temperature_low", Title: "T from", Unit: "K", Kind: table.KindNumber, Digits: 2, Fixed: true},
-		{Name: "temperature_high", Title: "to", Unit: "K", Kind: table.KindNumber, Digits: 2, Fixed: true},
-		{Name: "reduced_low", Title: "Tr from", Kind: table.KindNumber, Digits: 3, Fixed: true, Priority: 1},
-		{Name: "reduced_high", Title: "to", Kind: table.KindNumber, Digits: 3, Fixed: true, Priority: 1},
+		{Name: "pressure", Title: "P", Unit: "kPa"}, {Name: "temperature", Title: "T", Unit: "K"}, {Name: "reduced_temperature", Title: "T/Tc", Priority: 1},
 	}}
+	full := &table.Table{Title: title, Columns: []table.Column{
+		{Name: "fluid"}, {Name: "method"}, {Name: "rows", Kind: table.KindInteger}, {Name: "intact", Kind: table.KindInteger}, {Name: "own_flux", Kind: table.KindInteger},
+		{Name: "pressure_low", Unit: "kPa", Kind: table.KindNumber}, {Name: "pressure_high", Unit: "kPa", Kind: table.KindNumber},
+		{Name: "temperature_low", Unit: "K", Kind: table.KindNumber}, {Name: "temperature_high", Unit: "K", Kind: table.KindNumber},
+		{Name: "reduced_temperature_low", Kind: table.KindNumber}, {Name: "reduced_temperature_high", Kind: table.KindNumber},
+	}}
+	span := func(low, high float64, digits int) table.Cell {
+		if low == high {
+			return table.Text(number(low, digits))
+		}
+		return table.Text(number(low, digits) + " to " + number(high, digits))
+	}
 	for _, g := range j.Groups {
-		t.Rows = append(t.Rows, []table.Cell{table.Text(g.Fluid), table.Text(g.Method), table.Int(g.Rows), table.Int(g.Intact), table.Int(g.OwnFlux),
-			table.Num(g.PressureLow / 1e3), table.Num(g.PressureHi / 1e3), table.Num(g.TempLow), table.Num(g.TempHigh), table.Num(g.TrLow), table.Num(g.TrHigh)})
+		head := []table.Cell{table.Text(g.Fluid), table.Text(g.Method), table.Int(g.Rows), table.Int(g.Intact), table.Int(g.OwnFlux)}
+		t.Rows = append(t.Rows, append(slices.Clone(head), span(g.PressureLow/1e3, g.PressureHi/1e3, 6), span(g.TempLow, g.TempHigh, 5), span(g.TrLow, g.TrHigh, 3)))
+		full.Rows = append(full.Rows, append(head, table.Num(g.PressureLow/1e3), table.Num(g.PressureHi/1e3), table.Num(g.TempLow), table.Num(g.TempHigh), table.Num(g.TrLow), table.Num(g.TrHigh)))
 	}
 	blocks := []block{}
 	for _, s := range files {
@@ -188,7 +198,7 @@ func checkProduct(d *fit.Data) *product {
 		j.Warnings = append(j.Warnings, w.String())
 		blocks = append(blocks, block{text: "Warning: " + w.String()})
 	}
-	return &product{json: j, csv: t, blocks: blocks}
+	return &product{json: j, csv: full, blocks: blocks}
 }
 
 // checkGroups summarises the observations by fluid and method, in order of names.

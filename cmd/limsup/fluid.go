@@ -21,15 +21,18 @@ func fluidProduct(lib *fluid.Library, names []string) (*product, error) {
 			return nil, err
 		}
 		j.Fluids = append(j.Fluids, r)
-		t := &table.Table{Title: r.Name, Columns: []table.Column{{Name: "property", Title: "property"}, {Name: "value", Title: "value", Wrap: 20},
-			{Name: "unit", Title: "unit"}, {Name: "source", Title: "source", Wrap: 24}}}
+		t := &table.Table{Title: r.Name, Columns: []table.Column{{Name: "property", Title: "property"}, {Name: "value", Title: "value", Wrap: 40}, {Name: "unit", Title: "unit"}}}
 		for _, row := range recordRows(r) {
-			cells := make([]table.Cell, len(row))
-			for i, s := range row {
-				cells[i] = table.Text(s)
+			name := table.Text(row[0])
+			if row[3] != "" {
+				name = name.Note(row[3])
 			}
-			t.Rows = append(t.Rows, cells)
-			p.csv.Rows = append(p.csv.Rows, append([]table.Cell{table.Text(r.Key)}, cells...))
+			t.Rows = append(t.Rows, []table.Cell{name, table.Text(row[1]), table.Text(row[2])})
+			cells := []table.Cell{table.Text(r.Key)}
+			for _, s := range row {
+				cells = append(cells, table.Text(s))
+			}
+			p.csv.Rows = append(p.csv.Rows, cells)
 		}
 		if r.Note != "" {
 			t.Notes = append(t.Notes, r.Note)

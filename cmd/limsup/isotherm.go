@@ -131,7 +131,7 @@ func isothermProduct(m *eos.Model, iso *eos.Isotherm, volumes []float64) (*produ
 			{Name: "chemical_potential", Title: "μ − μsat", Unit: "J/mol", Kind: table.KindNumber, Digits: 5, Priority: 1},
 			{Name: "state", Title: "state"},
 		},
-		Notes: []string{"The chemical potential is counted from saturation at this temperature: a phase above zero is metastable."},
+		Notes: []string{"The chemical potential is counted from saturation at this temperature. At equal pressure the phase with the lower one is stable, the other metastable."},
 	}
 	for _, v := range volumes {
 		p, err := iso.At(v)

@@ -91,20 +91,29 @@ func (s *source) queries(c *cli.Context) ([]fit.Query, error) {
 }
 
 type predictionJSON struct {
-	Fluid        string     `json:"fluid"`
-	Pressure     *float64   `json:"pressure_Pa"`
-	Limit        fit.Limit  `json:"limit"`
-	Temperature  *float64   `json:"temperature_K,omitempty"`
-	U            *float64   `json:"standard_uncertainty_K,omitempty"`
-	Interval     []float64  `json:"interval_95_K,omitempty"`
-	UPressure    *float64   `json:"standard_uncertainty_Pa,omitempty"`
-	IntervalP    []float64  `json:"interval_95_Pa,omitempty"`
-	Log10Flux    *float64   `json:"log10_flux,omitempty"`
-	Spinodal     *float64   `json:"spinodal_K,omitempty"`
-	Saturation   *float64   `json:"saturation_K,omitempty"`
-	Extrapolated bool       `json:"extrapolated"`
-	Warnings     []string   `json:"warnings,omitempty"`
-	Error        *errorJSON `json:"error,omitempty"`
+	Fluid        string    `json:"fluid"`
+	Pressure     float64   `json:"pressure_Pa"`
+	Limit        fit.Limit `json:"limit"`
+	Temperature  float64   `json:"temperature_K"`
+	U            *float64  `json:"standard_uncertainty_K"`
+	Interval     []float64 `json:"interval_95_K"`
+	UPressure    *float64  `json:"standard_uncertainty_Pa,omitempty"`
+	IntervalP    []float64 `json:"interval_95_Pa,omitempty"`
+	Log10Flux    *float64  `json:"log10_flux"`
+	Spinodal     *float64  `json:"spinodal_K"`
+	Saturation   *float64  `json:"saturation_K"`
+	Extrapolated bool      `json:"extrapolated"`
+	Warnings     []string  `json:"warnings,omitempty"`
+}
+
+// failedJSON is a state without a limit.
+type failedJSON struct {
+	Fluid        string    `json:"fluid"`
+	Pressure     *float64  `json:"pressure_Pa,omitempty"`
+	Temperature  *float64  `json:"given_temperature_K,omitempty"`
+	Limit        fit.Limit `json:"limit"`
+	Extrapolated bool      `json:"extrapolated"`
+	Error        errorJSON `json:"error"`
 }
 
 type errorJSON struct {
@@ -138,20 +147,20 @@ func errorKind(err error) string {
 
 func predictProduct(m *fit.Model, queries []fit.Query) (p *product, missing int) {
 	j := struct {
-		Predictions []predictionJSON `json:"predictions"`
-		Cautions    []string         `json:"cautions"`
-	}{Predictions: []predictionJSON{}, Cautions: caution.Sentences()}
+		Predictions []any    `json:"predictions"`
+		Cautions    []string `json:"cautions"`
+	}{Predictions: []any{}, Cautions: caution.Sentences()}
 	t := predictTable(m)
 	for i := range queries {
 		q := &queries[i]
 		x, err := m.Predict(*q)
 		if err != nil {
 			missing++
-			j.Predictions = append(j.Predictions, failedJSON(m, q, err))
+			j.Predictions = append(j.Predictions, newFailed(m, q, err))
 			t.Rows = append(t.Rows, failedRow(m, q, err))
 			continue
 		}
-		j.Predictions = append(j.Predictions, predictedJSON(q, &x))
+		j.Predictions = append(j.Predictions, newPrediction(q, &x))
 		t.Rows = append(t.Rows, predictedRow(m, q, &x))
 	}
 	blocks := []block{{table: t}}
@@ -161,8 +170,8 @@ func predictProduct(m *fit.Model, queries []fit.Query) (p *product, missing int)
 	return &product{json: j, csv: t, blocks: append(blocks, cautionBlock())}, missing
 }
 
-func failedJSON(m *fit.Model, q *fit.Query, err error) predictionJSON {
-	j := predictionJSON{Fluid: q.Record.Key, Limit: m.Variant.Limit, Error: &errorJSON{errorKind(err), err.Error()}}
+func newFailed(m *fit.Model, q *fit.Query, err error) failedJSON {
+	j := failedJSON{Fluid: q.Record.Key, Limit: m.Variant.Limit, Error: errorJSON{errorKind(err), err.Error()}}
 	if q.AtTemperature {
 		j.Temperature = &q.Temperature
 	} else {
@@ -171,17 +180,19 @@ func failedJSON(m *fit.Model, q *fit.Query, err error) predictionJSON {
 	return j
 }
 
-func predictedJSON(q *fit.Query, x *fit.Prediction) predictionJSON {
-	j := predictionJSON{Fluid: x.Fluid, Pressure: &x.Pressure, Limit: x.Limit, Temperature: &x.Temperature,
+func newPrediction(q *fit.Query, x *fit.Prediction) predictionJSON {
+	j := predictionJSON{Fluid: x.Fluid, Pressure: x.Pressure, Limit: x.Limit, Temperature: x.Temperature,
 		U: optional(x.U, x.HasU), Log10Flux: optional(x.Log10Flux, x.HasFlux),
 		Spinodal: optional(x.SpinodalT, x.HasSpinodal), Saturation: optional(x.SaturationT, x.HasSaturation),
 		Extrapolated: x.Extrapolated, Warnings: x.Warnings}
-	if x.HasU {
-		if q.AtTemperature {
-			j.UPressure, j.IntervalP = &x.UPressure, []float64{x.Low, x.High}
-		} else {
-			j.Interval = []float64{x.Low, x.High}
-		}
+	switch {
+	case x.HasU && q.AtTemperature:
+		// the interval of the pressure, mapped to temperature along the line of limits
+		j.UPressure, j.IntervalP = &x.UPressure, []float64{x.Low, x.High}
+		half := (x.High - x.Low) / 2 / x.UPressure * x.U
+		j.Interval = []float64{x.Temperature - half, x.Temperature + half}
+	case x.HasU:
+		j.Interval = []float64{x.Low, x.High}
 	}
 	return j
 }
