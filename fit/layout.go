@@ -158,6 +158,9 @@ func (l *layout) place(p *Plan, obs []Observation, name string, set func(o, at i
 				reference = g
 			}
 		}
+		if r := p.References[string(t.By)]; count[r] > 0 {
+			reference = r
+		}
 		l.references[string(t.By)] = reference
 		if len(names) < 2 {
 			return &OptionError{"tune", t.String(), fmt.Sprintf("data with two or more of its groups; here all rows have %s %q", t.By, reference)}

@@ -164,6 +164,9 @@ type Plan struct {
 	Noise    Noise
 	Restarts int    // further starts of the search, from a space-filling sample
 	Seed     uint64 // of that sample
+	// References names, by scope ("method"), the group whose offset is zero; a group
+	// that the data do not hold, and nil, leave it to the group with most rows.
+	References map[string]string
 	// DefaultTerms is set by Complete when no term was given: the threshold, or the
 	// prefactor where every row carries its own flux.
 	DefaultTerms bool
