@@ -159,10 +159,7 @@ func (c Candidate) untuned() (Candidate, error) {
 	p := c.Plan
 	terms := p.Terms
 	p.Terms, p.DefaultTerms, p.Priors, p.Anchors, p.Starts = nil, false, nil, nil, nil
-	p.Fixed = slices.Clone(p.Fixed)
-	for _, s := range c.Plan.Starts {
-		p.Fixed = append(p.Fixed, s)
-	}
+	p.Fixed = append(slices.Clone(p.Fixed), c.Plan.Starts...)
 	if !slices.ContainsFunc(p.Fixed, func(s fit.Setting) bool { return s.Name == fit.Threshold && s.Group == "" }) {
 		p.Fixed = append(p.Fixed, fit.Setting{Name: fit.Threshold, Value: start(fit.Threshold)})
 	}

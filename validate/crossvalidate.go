@@ -72,8 +72,9 @@ func (e *FoldError) Error() string {
 // Unwrap returns the cause.
 func (e *FoldError) Unwrap() error { return e.Err }
 
-// CrossValidate tunes the plan anew without each fold and predicts the fold. warm,
-// if not nil, is the calibration on all rows, used as a start only.
+// CrossValidate tunes the plan anew without each fold and predicts the fold. warm, if
+// not nil, is the calibration on all rows: a start for the search, and
+// the reference of offsets.
 //
 // Errors: *FoldError for the first fold that could not be tuned or predicted.
 func CrossValidate(d *fit.Data, p fit.Plan, f *Folds, warm *fit.Calibration) (*CrossValidation, error) {
@@ -87,6 +88,9 @@ func crossValidate(ctx context.Context, d *fit.Data, p fit.Plan, f *Folds, warm 
 		return nil, err
 	}
 	cv := &CrossValidation{Folds: f, Rows: make([]LeftOut, len(d.Observations))}
+	if warm != nil { // what an offset is counted from must not change with the rows left out
+		p.References = warm.References
+	}
 	errs := make([]error, len(f.Names))
 	parallel(len(f.Names), func(k int) {
 		if ctx.Err() == nil {

@@ -89,7 +89,9 @@ func (c *Comparison) nested(ctx context.Context, members []member, tick func()) 
 // leaveTwoOut tunes without folds j and k and stores the residuals of both.
 func (c *Comparison) leaveTwoOut(m *member, warm *fit.Calibration, j, k int, inner [][]float64) error {
 	of := c.Folds.Of
-	cal, err := fit.Calibrate(m.data.Subset(func(i int) bool { return of[i] != j && of[i] != k }), m.Plan, fit.Options{Workers: 1, Warm: warm})
+	plan := m.Plan
+	plan.References = warm.References
+	cal, err := fit.Calibrate(m.data.Subset(func(i int) bool { return of[i] != j && of[i] != k }), plan, fit.Options{Workers: 1, Warm: warm})
 	if err != nil {
 		return err
 	}
