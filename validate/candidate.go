@@ -112,9 +112,11 @@ func ParseCandidate(s string) (Candidate, error) {
 		return bad("tune=none alone")
 	}
 	c.startWhereSet()
-	if _, err := c.Plan.Complete(); err != nil {
+	p, err := c.Plan.Complete()
+	if err != nil {
 		return Candidate{}, err
 	}
+	c.Plan.Variant = p.Variant
 	return c, nil
 }
 
@@ -148,6 +150,7 @@ func (c Candidate) resolve(ownFlux bool) (Candidate, error) {
 		}
 		rest := slices.DeleteFunc(slices.Clone(c.Plan.Terms), named)
 		c.Plan.Terms = append([]fit.Term{{Name: name}}, rest...)
+		c.startWhereSet()
 	}
 	c.Plan, err = c.Plan.Complete()
 	return c, err

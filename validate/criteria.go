@@ -80,8 +80,8 @@ func maximumLikelihood(rows []reading) (lnL, spread float64, ok bool) {
 		}
 	}
 	q := 0.5 * (lo + hi)
-	if logLikelihood(rows, at(best)) > logLikelihood(rows, q) {
-		q = at(best)
+	if b := at(best - 1); b == 0 && logLikelihood(rows, 0) >= logLikelihood(rows, q) {
+		q = 0
 	}
 	return logLikelihood(rows, q), math.Sqrt(q), true
 }
