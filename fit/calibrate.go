@@ -229,8 +229,19 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings) (cov
 			if err != nil {
 				return nil, &ConvergenceError{c.Plan.Variant.Name(), err.Error(), err}
 			}
-			copy(c.theta, res.X)
 			c.Evaluations += res.Evaluations
+			if !settings.Local && c.doubtful(lik, res) {
+				// A bound, or the spinodal, may have stopped the search on its way to a better
+				// place: look again from points spread over the bounds.
+				wide := leastsq.Settings{Starts: wideStarts, Seed: c.Plan.Seed, Local: true}
+				if again, err := leastsq.Minimize(c.objective(lik, variance), wide); err == nil {
+					c.Evaluations += again.Evaluations
+					if again.Usable && again.Value < res.Value-1e-9*math.Abs(res.Value) {
+						res = again
+					}
+				}
+			}
+			copy(c.theta, res.X)
 			c.Converged, c.Usable, c.Reason = res.Converged, res.Usable, res.Reason
 			// A search that cannot leave its start is a failure from the start values,
 			// but not from where an earlier search ended: that point has a kink.
@@ -274,6 +285,28 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings) (cov
 			return covPsi, nil
 		}
 	}
+}
+
+// wideStarts is the number of starts of the second look at a doubtful optimum.
+const wideStarts = 12
+
+// doubtful tells an optimum at which a parameter stands at a bound or the spinodal
+// stands in for a kinetic limit.
+func (c *Calibration) doubtful(lik *likelihood, res *leastsq.Result) bool {
+	for i := range lik.lay.theta {
+		if atBound(res.X[i], &lik.lay.theta[i]) != "" {
+			return true
+		}
+	}
+	if lik.evaluate(res.X) != nil {
+		return true
+	}
+	for i := range lik.limit {
+		if lik.limit[i].atSpinodal {
+			return true
+		}
+	}
+	return false
 }
 
 // unadjusted is the estimate of ψ with the locations held.

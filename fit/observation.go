@@ -308,3 +308,11 @@ func (ph *Physics) limitOrSpinodal(P float64, t nucleation.Target, own bool, gue
 	}
 	return l, err
 }
+
+// FluxQuery is Query for a row that has not been through Prepare: it takes the
+// flux from the row.
+func (o *Observation) FluxQuery() Query {
+	c := *o
+	c.Target, c.OwnFlux = rowTarget(&o.Row)
+	return c.Query()
+}
