@@ -65,6 +65,9 @@ type Calibration struct {
 	// uncertainty are zero.
 	Covariance *mat.SymDense
 	Locations  int // number of locations
+	// Information is the curvature of −ln L with respect to the locations at the
+	// estimates, also where it is singular and there is no covariance.
+	Information *mat.SymDense
 
 	Rows []RowResult
 
@@ -129,7 +132,8 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 		return nil, err
 	}
 	c := &Calibration{Plan: p, Data: d, Locations: len(lay.theta), References: lay.references}
-	settings := leastsq.Settings{Starts: p.Restarts + 1, Seed: p.Seed}
+	first := leastsq.Settings{Starts: p.Restarts + 1, Seed: p.Seed, Local: true}
+	settings := first
 	c.theta, c.psi = starts(lay.theta), starts(lay.psi)
 	if o.Warm != nil {
 		// Near an earlier answer a local search is enough.
@@ -137,11 +141,15 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 		o.Warm.seed(lay.psi, c.psi)
 		settings = leastsq.Settings{Local: true}
 	}
-	covPsi, err := c.alternate(lik, settings)
-	if err != nil && o.Warm != nil {
+	covPsi, err := c.alternate(lik, settings, o.Warm == nil)
+	for _, s := range []leastsq.Settings{first, {Starts: p.Restarts + 1, Seed: p.Seed}} {
+		if err == nil {
+			break
+		}
+		// From the start values; at last with the engine's own second attempts.
 		c.theta, c.psi, c.Warnings = starts(lay.theta), starts(lay.psi), nil
 		copy(lik.guess, startGuesses(d.Observations))
-		covPsi, err = c.alternate(lik, leastsq.Settings{})
+		covPsi, err = c.alternate(lik, s, true)
 	}
 	if err != nil {
 		return nil, err
@@ -211,8 +219,9 @@ func enough(l *layout, d *Data, p *Plan) error {
 }
 
 // alternate finds θ at given ψ and ψ at given θ in turn.
-// settings are those of the first search.
-func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings) (covPsi *mat.SymDense, err error) {
+// settings are those of the first search; cold tells that it begins at start values
+// and not near an earlier answer.
+func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings, cold bool) (covPsi *mat.SymDense, err error) {
 	variance := make([]float64, len(lik.obs))
 	c.Converged, c.Usable = true, true
 	if err := lik.evaluate(c.theta); err != nil {
@@ -230,7 +239,7 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings) (cov
 				return nil, &ConvergenceError{c.Plan.Variant.Name(), err.Error(), err}
 			}
 			c.Evaluations += res.Evaluations
-			if !settings.Local && c.doubtful(lik, res) {
+			if cold && round == 0 && c.doubtful(lik, res) {
 				// A bound, or the spinodal, may have stopped the search on its way to a better
 				// place: look again from points spread over the bounds.
 				wide := leastsq.Settings{Starts: wideStarts, Seed: c.Plan.Seed, Local: true}
@@ -245,7 +254,7 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings) (cov
 			c.Converged, c.Usable, c.Reason = res.Converged, res.Usable, res.Reason
 			// A search that cannot leave its start is a failure from the start values,
 			// but not from where an earlier search ended: that point has a kink.
-			c.Usable = c.Usable || round > 0 || settings.Local
+			c.Usable = c.Usable || round > 0 || !cold
 			if !c.Usable {
 				return nil, &ConvergenceError{c.Plan.Variant.Name(), res.Reason, nil}
 			}

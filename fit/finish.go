@@ -24,7 +24,7 @@ func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense) error {
 	if err != nil {
 		return err
 	}
-	c.LogLik = -value
+	c.LogLik, c.Information = -value, curv
 	active := c.active(lay)
 	c.Identity = identify(curv, active, lay, lik)
 
