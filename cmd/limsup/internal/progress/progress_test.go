@@ -109,6 +109,8 @@ func TestEveryDrawingErasesTheOneBefore(t *testing.T) {
 			b.Set(i, 50)
 			time.Sleep(7 * time.Second)
 		}
+		b.Set(0, 0) // back to the dial, which is shorter
+		time.Sleep(time.Second)
 		b.Stop()
 		line, drawings := "", 0
 		for _, part := range strings.Split(out.String(), "\r") {
