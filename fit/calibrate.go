@@ -284,7 +284,7 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings, cold
 		}
 		if moved < settled || round >= patience && moved < nearlySettled {
 			if c.Converged {
-				c.Reason = fmt.Sprintf("converged in %d rounds of parameters and spread: %s", round+1, c.Reason)
+				c.Reason = fmt.Sprintf("converged in %d rounds of parameters and spread", round+1)
 			}
 			return covPsi, nil
 		}

@@ -218,10 +218,10 @@ func (r *calibration) verdictText() string {
 	if r.cv == nil {
 		return "None: " + r.noCV + "."
 	}
-	return "Tuning is " + map[validate.Verdict]string{
-		validate.Better: "better than the untuned model",
-		validate.NoGain: "no measurable gain over the untuned model",
-		validate.Worse:  "worse than the untuned model",
+	return "Tuning " + map[validate.Verdict]string{
+		validate.Better: "is better than the untuned model",
+		validate.NoGain: "brings no measurable gain over the untuned model",
+		validate.Worse:  "is worse than the untuned model",
 	}[r.cv.Verdict] + ": " + r.cv.Reason + "."
 }
 

@@ -3,6 +3,7 @@ package main
 import (
 	"fmt"
 	"math"
+	"path/filepath"
 	"slices"
 	"sort"
 	"strings"
@@ -141,9 +142,9 @@ func excludedTable(list []measure.Exclusion) *table.Table {
 	}
 	t := &table.Table{Title: fmt.Sprintf("Excluded rows (%d)", len(list)), Columns: []table.Column{{Name: "row", Title: "row"}, {Name: "fluid", Title: "fluid"}, {Name: "reason", Title: "reason", Wrap: 40}}}
 	for _, e := range list {
-		at := fmt.Sprintf("%s:%d", e.File, e.Line)
+		at := fmt.Sprintf("%s:%d", filepath.Base(e.File), e.Line)
 		if e.Where != "" {
-			at = e.File + ":" + e.Where
+			at = filepath.Base(e.File) + ":" + e.Where
 		}
 		t.Rows = append(t.Rows, []table.Cell{table.Text(at), table.Text(e.Fluid), table.Text(e.Reason)})
 	}
