@@ -25,15 +25,18 @@ const (
 
 // LeftOut is one observation predicted by a model that was tuned without its fold.
 type LeftOut struct {
-	Index    int // of the observation
-	Fold     int
-	Tuned    float64 // residual of the tuned model, K
-	Untuned  float64 // residual of the untuned model, K
-	U        float64 // standard uncertainty of the tuned prediction, spread included, K
-	HasU     bool
-	Boiled   bool // intact rows are predicted but do not enter the errors
-	Degrees  int
-	Variance float64 // of the reading from its stated uncertainties, K²
+	Index   int // of the observation
+	Fold    int
+	Tuned   float64 // residual of the tuned model, K
+	Untuned float64 // residual of the untuned model, K
+	// UntunedAtSpinodal is set where the untuned model has no kinetic limit, so that the
+	// spinodal stands in for it.
+	UntunedAtSpinodal bool
+	U                 float64 // standard uncertainty of the tuned prediction, spread included, K
+	HasU              bool
+	Boiled            bool // intact rows are predicted but do not enter the errors
+	Degrees           int
+	Variance          float64 // of the reading from its stated uncertainties, K²
 }
 
 // Total is the standard uncertainty of the tuned residual in K: of the prediction with
@@ -155,7 +158,7 @@ func (cv *CrossValidation) leaveOut(d *fit.Data, p fit.Plan, k int, untuned *fit
 			return fmt.Errorf("%s: %w", o.At(), err)
 		}
 		cv.Rows[i] = LeftOut{Index: i, Fold: k, Tuned: o.Temperature - tuned.Temperature, Untuned: o.Temperature - before.Temperature,
-			U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Degrees: m.Degrees, Variance: statedVariance(o, tuned.Slope)}
+			UntunedAtSpinodal: before.AtSpinodal, U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Degrees: m.Degrees, Variance: statedVariance(o, tuned.Slope)}
 	}
 	return nil
 }

@@ -37,7 +37,7 @@ func prepare(set *measure.Set, lib *fluid.Library, candidates []Candidate) ([]me
 			continue
 		}
 		m := member{Candidate: k, name: k.name(), untuned: u.name(), data: d}
-		if err := m.lowerStart(set, lib); err != nil {
+		if err := m.moveStart(set, lib); err != nil {
 			return nil, err
 		}
 		add(m)
@@ -45,26 +45,35 @@ func prepare(set *measure.Set, lib *fluid.Library, candidates []Candidate) ([]me
 	return out, nil
 }
 
-// lowerStart starts the search for a threshold lower where more rows can be predicted
-// there: a flux of 10¹² is more than some equations reach for some fluids, and where
-// the search starts is no part of a tuned model. A start that was chosen is kept.
-func (m *member) lowerStart(set *measure.Set, lib *fluid.Library) error {
-	free := slices.ContainsFunc(m.Plan.Terms, func(t fit.Term) bool { return t.Name == fit.Threshold })
-	given := slices.ContainsFunc(m.Plan.Starts, func(s fit.Setting) bool { return s.Name == fit.Threshold })
-	if !free || given {
-		return nil
-	}
+// reach lists other starts, in the order in which they are tried, for parameters on
+// which it depends whether a flux is reached at all.
+var reach = map[string][]float64{
+	fit.Threshold: {10, 8, 6, 4, 2, 0},
+	fit.Prefactor: {2, 4, 6, 8, 10, 12},
+}
+
+// moveStart starts the search for a threshold lower, or for a prefactor higher, where
+// more rows can be predicted there: a flux of 10¹² is more than some equations reach for
+// some fluids, and where the search starts is no part of a tuned model. A start that was
+// chosen is kept.
+func (m *member) moveStart(set *measure.Set, lib *fluid.Library) error {
 	plan, before := m.Plan, len(m.data.Observations)
-	for s := start(fit.Threshold) - 2; s >= 0 && len(m.data.Observations) < len(set.Rows); s -= 2 {
-		p := plan
-		p.Starts = append(slices.Clone(plan.Starts), fit.Setting{Name: fit.Threshold, Value: s})
-		d, err := fit.Prepare(set, lib, p)
-		if err != nil {
-			return err
-		}
-		if len(d.Observations) > len(m.data.Observations) {
-			m.Plan, m.data = p, d
-			m.note = fmt.Sprintf("the search starts at threshold %g: with the usual %g it predicts %d rows only", s, start(fit.Threshold), before)
+	for _, t := range plan.Terms {
+		given := slices.ContainsFunc(plan.Starts, func(s fit.Setting) bool { return s.Name == t.Name })
+		for _, s := range reach[t.Name] {
+			if given || len(m.data.Observations) == len(set.Rows) {
+				break
+			}
+			p := plan
+			p.Starts = append(slices.Clone(plan.Starts), fit.Setting{Name: t.Name, Value: s})
+			d, err := fit.Prepare(set, lib, p)
+			if err != nil {
+				return err
+			}
+			if len(d.Observations) > len(m.data.Observations) {
+				m.Plan, m.data = p, d
+				m.note = fmt.Sprintf("the search starts at %s %g: with the usual %g it predicts %d rows only", t.Name, s, start(t.Name), before)
+			}
 		}
 	}
 	return nil

@@ -41,9 +41,26 @@ func (c *Comparison) verdict() string {
 		return "No row boiled, so no variant can be preferred."
 	}
 	s := fmt.Sprintf("Smallest error on left-out rows: %s, %.3g K ± %.2g K.", best.Name, best.CVRMSE, best.CVSE)
-	if len(c.Entries) == 1 {
+	_, folds := best.left.differenceSE(nil)
+	switch {
+	case len(c.Entries) == 1:
 		return s + " There is nothing to compare it with."
+	case folds < 2:
+		return s + " All rows belong to one fold, so nothing can be said about the differences."
 	}
+	s += c.ties()
+	if folds < fewFolds {
+		s += fmt.Sprintf(" With only %d folds the standard errors are themselves uncertain.", folds)
+	}
+	return s
+}
+
+// fewFolds is the number of folds below which a standard error is poorly known: from
+// nine differences it has a relative uncertainty of 1/√(2·9), a quarter.
+const fewFolds = 10
+
+// ties names what cannot be told from the best.
+func (c *Comparison) ties() string {
 	var tied []string
 	for i := range c.Entries[1:] {
 		if e := &c.Entries[i+1]; e.Tied {
@@ -52,9 +69,9 @@ func (c *Comparison) verdict() string {
 	}
 	if len(tied) == 0 {
 		next := &c.Entries[1]
-		return s + fmt.Sprintf(" It is distinguishable from all others at one standard error; the next, %s, errs by %.2g K ± %.2g K more.", next.Name, next.Difference, next.DifferenceSE)
+		return fmt.Sprintf(" It is distinguishable from all others at one standard error; the next, %s, errs by %.2g K ± %.2g K more.", next.Name, next.Difference, next.DifferenceSE)
 	}
-	s += " Not distinguishable from it at one standard error: " + strings.Join(tied, "; ") + "."
+	s := " Not distinguishable from it at one standard error: " + strings.Join(tied, "; ") + "."
 	if c.Simplest == 0 {
 		return s + " None of these has fewer parameters."
 	}

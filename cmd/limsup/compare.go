@@ -2,14 +2,10 @@ package main
 
 import (
 	"fmt"
-	"io"
 	"strings"
-	"time"
 
-	"github.com/schollz/progressbar/v3"
 	"github.com/urfave/cli/v2"
 
-	"limsup/cmd/limsup/internal/table"
 	"limsup/data/quantity"
 	"limsup/fit"
 	"limsup/validate"
@@ -31,6 +27,7 @@ func compareCommand() *cli.Command {
 			&cli.StringFlag{Name: "keep", Value: "90%", Usage: "`SHARE` of the rows that a variant must be able to predict"},
 			&cli.BoolFlag{Name: "nested", Usage: "estimate the error of choosing the best and then tuning it"},
 			&cli.StringFlag{Name: "noise", Usage: "`DISTRIBUTION` of the residuals: gaussian, student or student=DEGREES (default: gaussian)"},
+			&cli.BoolFlag{Name: "quiet", Usage: "show no progress"},
 			fluidsFileFlag(), formatFlag(), seedFlag(), outFlag("the tables")},
 		Action: func(c *cli.Context) error {
 			if err := begin(c); err != nil {
@@ -48,10 +45,10 @@ func compareCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			bar := newBar(c.App.ErrWriter)
-			o.Progress = bar.set
+			bar := startProgress(c, "comparing variants")
+			o.Progress = bar.Set
 			r, err := validate.Compare(c.Context, set, lib, o)
-			bar.finish()
+			bar.Stop()
 			if err != nil {
 				return err
 			}
@@ -101,33 +98,6 @@ func parseShare(s string) (float64, error) {
 		v /= 100
 	}
 	return v, err
-}
-
-// bar shows progress on a terminal, and nothing elsewhere.
-type bar struct{ *progressbar.ProgressBar }
-
-// refresh is how often the bar is drawn anew at most.
-const refresh = 100 * time.Millisecond
-
-func newBar(w io.Writer) *bar {
-	if !table.IsTerminal(w) {
-		return &bar{}
-	}
-	return &bar{progressbar.NewOptions(1, progressbar.OptionSetWriter(w), progressbar.OptionSetDescription("comparing"),
-		progressbar.OptionSetPredictTime(true), progressbar.OptionThrottle(refresh), progressbar.OptionClearOnFinish())}
-}
-
-func (b *bar) set(done, total int) {
-	if b.ProgressBar != nil {
-		b.ChangeMax(total)
-		_ = b.Set(done) // a bar that cannot be drawn is no reason to stop
-	}
-}
-
-func (b *bar) finish() {
-	if b.ProgressBar != nil {
-		_ = b.Clear()
-	}
 }
 
 type compareJSON struct {

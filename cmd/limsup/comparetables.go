@@ -133,7 +133,17 @@ func pairTable(r *validate.Comparison) *table.Table {
 			continue
 		}
 		cv := e.CV
-		t.Rows = append(t.Rows, []table.Cell{table.Text(e.Name), table.Num(cv.UntunedRMSE), table.Num(cv.RMSE), table.Num(cv.Difference), table.Num(cv.DifferenceSE), table.Text(string(cv.Verdict))})
+		name := table.Text(e.Name)
+		n := 0
+		for k := range cv.Rows {
+			if cv.Rows[k].UntunedAtSpinodal {
+				n++
+			}
+		}
+		if n > 0 {
+			name = name.Note(fmt.Sprintf("untuned, the spinodal stands in for the kinetic limit of %d rows, which it does not have", n))
+		}
+		t.Rows = append(t.Rows, []table.Cell{name, table.Num(cv.UntunedRMSE), table.Num(cv.RMSE), table.Num(cv.Difference), table.Num(cv.DifferenceSE), table.Text(string(cv.Verdict))})
 	}
 	return t
 }
