@@ -125,7 +125,7 @@ func pairTable(r *validate.Comparison) *table.Table {
 		{Name: "cv_rmse", Title: "tuned CV RMSE", Unit: "K", Kind: table.KindNumber, Digits: 2, Fixed: true},
 		{Name: "difference", Title: "difference", Unit: "K", Kind: table.KindNumber, Digits: 2, Fixed: true},
 		{Name: "difference_se", Title: "SE", Unit: "K", Kind: table.KindNumber, Digits: 2, Fixed: true},
-		{Name: "verdict", Title: "tuning is"},
+		{Name: "verdict", Title: "verdict"},
 	}}
 	for i := range r.Entries {
 		e := &r.Entries[i]
