@@ -8,6 +8,7 @@ import (
 	"flag"
 	"os"
 	"path/filepath"
+	"runtime"
 	"strings"
 	"testing"
 )
@@ -273,6 +274,20 @@ func TestModelFile(t *testing.T) {
 	}
 	if _, message, code := invoke(t, "predict", "--model", b, "--fluid", "propane", "--pressure", "1 atm"); code != 2 || !strings.Contains(message, "b.json:") {
 		t.Errorf("a broken model file: status %d, %q", code, message)
+	}
+}
+
+// TestSameOutput: the same command prints the same bytes whatever the number of
+// processors.
+func TestSameOutput(t *testing.T) {
+	args := []string{"calibrate", "--data", demo, "--tune", "prefactor", "--tune", "surface-tension", "--format", "json"}
+	defer runtime.GOMAXPROCS(runtime.GOMAXPROCS(1))
+	want, _, _ := invoke(t, args...)
+	runtime.GOMAXPROCS(4)
+	for range 2 {
+		if got, _, _ := invoke(t, args...); got != want {
+			t.Error("output differs: " + firstDifference(got, want))
+		}
 	}
 }
 
