@@ -4,8 +4,6 @@ import (
 	"fmt"
 	"runtime"
 	"sync"
-
-	"limsup/eos/nucleation"
 )
 
 // system evaluates the predicted limits of all observations at given parameters.
@@ -132,12 +130,4 @@ func (s *system) stated(i int) float64 {
 	o := &s.obs[i]
 	u, v := o.UTemperature, o.UPressure*s.limit[i].dTdP
 	return float64(u*u) + float64(v*v)
-}
-
-// flux is the target of an observation at θ, for reports.
-func (s *system) flux(i int) nucleation.Target {
-	if s.obs[i].OwnFlux {
-		return s.obs[i].Target
-	}
-	return nucleation.Threshold(s.cells[s.lay.cellOf[i]].Threshold)
 }

@@ -37,9 +37,7 @@ func fluidProduct(lib *fluid.Library, names []string) (*product, error) {
 		if r.Note != "" {
 			t.Notes = append(t.Notes, r.Note)
 		}
-		for _, w := range r.Warnings() {
-			t.Notes = append(t.Notes, w)
-		}
+		t.Notes = append(t.Notes, r.Warnings()...)
 		p.blocks = append(p.blocks, block{table: t})
 	}
 	p.json = j
