@@ -92,7 +92,7 @@ func shapiroWeights(n int) []float64 {
 
 func shapiroP(W float64, n int) float64 {
 	if n == 3 { // exact
-		return math.Max(0, 6/math.Pi*(math.Asin(math.Sqrt(W))-math.Asin(math.Sqrt(0.75))))
+		return math.Min(1, math.Max(0, 6/math.Pi*(math.Asin(math.Sqrt(W))-math.Asin(math.Sqrt(0.75)))))
 	}
 	if W == 1 {
 		return 1
