@@ -22,6 +22,7 @@ type position struct {
 // record with the positions of its fields, and closes it.
 type assembler struct {
 	options Options
+	limits  limits
 	info    FileInfo
 	layout  layout
 	set     Set
@@ -31,6 +32,8 @@ type assembler struct {
 	digest  []byte
 	texts   map[string]string
 	fluids  map[string]verdict
+	share   func() float64    // how much of the file has been read, 0 to 1; 0 if not known
+	spoilt  [columnCount]bool // columns of the present record whose field is already reported
 }
 
 // verdict is what Options.KnownFluid said of a name.
@@ -39,8 +42,8 @@ type verdict struct {
 	err error
 }
 
-func newAssembler(name string, o Options) *assembler {
-	return &assembler{options: o, info: FileInfo{Name: name}, seen: map[[16]byte]int{}, texts: map[string]string{}, fluids: map[string]verdict{}}
+func newAssembler(name string, o Options, l limits) *assembler {
+	return &assembler{options: o, limits: l, info: FileInfo{Name: name}, seen: map[[16]byte]int{}, texts: map[string]string{}, fluids: map[string]verdict{}}
 }
 
 func (a *assembler) fail(at position, header, found, expected string, cause error) {
@@ -60,8 +63,24 @@ func (a *assembler) cause(at position, header string, err error) {
 	a.fail(at, header, plain.Error(), e.Expected, err)
 }
 
-// record reads one row. The fields may be overwritten afterwards.
-func (a *assembler) record(fields []string, at func(int) position) {
+// record reads one row. The fields may be overwritten afterwards. It returns false if the rest of the file need
+// not be read, since it is too long or full of problems.
+func (a *assembler) record(fields []string, at func(int) position) bool {
+	a.add(fields, at)
+	start := at(0)
+	switch {
+	case len(a.ps) >= a.limits.problems:
+		a.fail(position{line: start.line + 1, where: start.where}, "", fmt.Sprintf("reading stopped after %d problems", a.limits.problems), "", nil)
+		return false
+	case len(a.set.Rows) > a.limits.rows:
+		e := &LimitError{What: "rows", Limit: int64(a.limits.rows)}
+		a.fail(position{line: start.line, where: start.where}, "", e.Error(), "at most that (divide the file)", e)
+		return false
+	}
+	return true
+}
+
+func (a *assembler) add(fields []string, at func(int) position) {
 	start := at(0)
 	if len(fields) != a.layout.width {
 		found := fmt.Sprintf("row has %d fields", len(fields))
@@ -86,15 +105,36 @@ func (a *assembler) record(fields []string, at func(int) position) {
 	first, repeat := a.seen[key]
 	switch {
 	case repeat:
-		a.exclude(start, r.Fluid, fmt.Sprintf("same as line %d in every column; if it is another droplet, add a column that numbers the droplets", first))
+		kind := "line"
+		if start.where != "" {
+			kind = "row"
+		}
+		a.exclude(start, r.Fluid, fmt.Sprintf("same as %s %d in every column; if it is another droplet, add a column that numbers the droplets", kind, first))
 	case len(a.ps) == before:
 		a.seen[key] = start.line
+		a.grow()
 		a.set.Rows = append(a.set.Rows, r)
 		a.judge(&a.set.Rows[len(a.set.Rows)-1], fields)
 	default:
 		a.seen[key] = start.line
 	}
 }
+
+// grow makes room for as many rows as the share of the file read so far leads to expect, so that a large
+// file is not copied from one slice to the next several times over.
+func (a *assembler) grow() {
+	n := len(a.set.Rows)
+	if n < cap(a.set.Rows) || n < firstGuess || a.share == nil {
+		return
+	}
+	const margin = 1.02 // numbers get longer towards the end of a file, so the guess is mostly high as it is
+	if s := a.share(); s > 0 && s <= 1 {
+		a.set.Rows = slices.Grow(a.set.Rows, int(min(float64(n)*(margin/s-1), float64(a.limits.rows)))+firstGuess)
+	}
+}
+
+// firstGuess is how many rows are read before a guess is made.
+const firstGuess = 1 << 10
 
 func (a *assembler) exclude(at position, fluid, reason string) {
 	a.set.Excluded = append(a.set.Excluded, Exclusion{File: a.info.Name, Line: at.line, Where: at.where, Fluid: fluid, Reason: reason})

@@ -1,6 +1,6 @@
-// Package measure reads measured superheat limits, one row per observation, from CSV files.
+// Package measure reads measured superheat limits, one row per observation, from CSV files and XLSX workbooks.
 //
-// The file is RFC 4180 CSV in UTF-8, with or without byte order mark, lines ended by LF or CRLF, lines
+// A text file is RFC 4180 CSV in UTF-8, with or without byte order mark, lines ended by LF or CRLF, lines
 // that begin with # taken as comments. The header names each column as quantity/unit, the unit as
 // package quantity reads it (UCUM):
 //
@@ -28,6 +28,18 @@
 // back together as Problems; no row is dropped for being wrong. Two kinds of row are left out and
 // listed as Exclusion: one that repeats an earlier row in every column, and one with no entry at all. What
 // can be read but looks doubtful is a Warning.
+//
+// # Workbooks
+//
+// One sheet holds the table, its header in the first row that is neither empty nor a comment; a row whose first
+// filled cell is a text that begins with # is a comment. Numbers are taken as stored, with all digits, whatever
+// their format shows. A formula counts with its stored result and is never computed; one without result is a
+// Problem, and so are, in columns that are read, booleans, error values and dates (which spreadsheet programs
+// tend to make of numbers), and merged cells. Rows and columns hidden on the screen are read like any other,
+// with a Warning: leaving them out would make a result depend on a filter. Empty rows are passed over. Places
+// name sheet and cell: "drops.xlsx:Sheet1!B7".
+//
+// A file that asks for absurd amounts (rows, columns, unpacked bytes, nesting) is refused with a LimitError.
 //
 // # What it will not do
 //

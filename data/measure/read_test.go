@@ -244,9 +244,11 @@ func TestReadFile(t *testing.T) {
 	if _, err := ReadFile(path+".none", Options{}); !errors.Is(err, os.ErrNotExist) {
 		t.Errorf("absent file: %v", err)
 	}
-	var p *Problem
-	if _, err := ReadFile("drops.xlsx", Options{}); !errors.As(err, &p) {
-		t.Errorf("workbook: %v", err)
+	for _, name := range []string{"drops.xls", "drops.ODS", "drops.xlsb"} {
+		var p *Problem
+		if _, err := ReadFile(name, Options{}); !errors.As(err, &p) || !strings.Contains(p.Found, "a workbook of another format") {
+			t.Errorf("%s: %v", name, err)
+		}
 	}
 }
 

@@ -1,6 +1,10 @@
 package measure
 
-import "fmt"
+import (
+	"fmt"
+	"hash/maphash"
+	"slices"
+)
 
 // Set is what one or more files hold.
 type Set struct {
@@ -13,6 +17,7 @@ type Set struct {
 // FileInfo describes one file that was read.
 type FileInfo struct {
 	Name           string
+	Sheet          string   // of a workbook; empty for text files
 	SHA256         string   // of the bytes of the file, hexadecimal
 	Rows           int      // rows kept
 	Columns        []string // headers used, as written, in the order of the file
@@ -59,14 +64,24 @@ func (w Warning) String() string {
 }
 
 // Join puts sets one after the other. A row that equals a row of an earlier set in every column the
-// reader knows is kept with a Warning, since the sets may be repeats of one experiment.
+// reader knows is kept with a Warning, since the sets may be repeats of one experiment. A single set shares
+// its rows with the result.
 //
 // Errors: Problems if two files have the same bytes, or if there is no row at all.
 func Join(sets ...*Set) (*Set, error) {
 	out := &Set{}
+	if len(sets) == 1 {
+		out.Rows = slices.Clip(sets[0].Rows) // shared: nothing is put behind them
+	} else {
+		total := 0
+		for _, s := range sets {
+			total += len(s.Rows)
+		}
+		out.Rows = make([]Row, 0, total)
+	}
 	var ps Problems
 	sums := map[string]string{}
-	seen := map[Row]string{}
+	index := rowIndex{seed: maphash.MakeSeed(), first: map[uint64]int32{}}
 	for n, s := range sets {
 		for _, f := range s.Files {
 			if first, twice := sums[f.SHA256]; twice {
@@ -76,22 +91,20 @@ func Join(sets ...*Set) (*Set, error) {
 		}
 		var repeats doubts
 		for i := range s.Rows {
-			r := s.Rows[i]
-			if first, repeat := seen[bare(r)]; repeat {
+			r := &s.Rows[i]
+			if first := index.find(out.Rows, r); first != nil {
 				repeats.add("repeat", Warning{File: r.File, Line: r.Line, Where: r.Where,
-					Text: fmt.Sprintf("%s: same as %s in every column read; both are kept", printable(r.Fluid), first)})
+					Text: fmt.Sprintf("%s: same as %s in every column read; both are kept", printable(r.Fluid), first.At())})
 			}
 		}
-		for i := range s.Rows {
-			if n == len(sets)-1 {
-				break // no set follows
-			}
-			if k := bare(s.Rows[i]); seen[k] == "" {
-				seen[k] = s.Rows[i].At()
+		if len(sets) > 1 {
+			before := len(out.Rows)
+			out.Rows = append(out.Rows, s.Rows...)
+			if n < len(sets)-1 { // a set follows
+				index.add(out.Rows, before)
 			}
 		}
 		out.Files = append(out.Files, s.Files...)
-		out.Rows = append(out.Rows, s.Rows...)
 		out.Excluded = append(out.Excluded, s.Excluded...)
 		out.Warnings = append(out.Warnings, s.Warnings...)
 		out.Warnings = append(out.Warnings, repeats.list...)
@@ -103,6 +116,35 @@ func Join(sets ...*Set) (*Set, error) {
 		return nil, ps
 	}
 	return out, nil
+}
+
+// rowIndex finds the first of equal rows by a hash of all but their place.
+type rowIndex struct {
+	seed  maphash.Seed
+	first map[uint64]int32
+}
+
+func (x *rowIndex) hash(r *Row) uint64 { return maphash.Comparable(x.seed, bare(*r)) }
+
+// add enters rows from the given one on.
+func (x *rowIndex) add(rows []Row, from int) {
+	for i := from; i < len(rows); i++ {
+		h := x.hash(&rows[i])
+		if _, ok := x.first[h]; !ok {
+			x.first[h] = int32(i)
+		}
+	}
+}
+
+// find returns the first row equal to r, or nil. It could miss one only if two different rows had one hash.
+func (x *rowIndex) find(rows []Row, r *Row) *Row {
+	if len(x.first) == 0 {
+		return nil
+	}
+	if i, ok := x.first[x.hash(r)]; ok && bare(rows[i]) == bare(*r) {
+		return &rows[i]
+	}
+	return nil
 }
 
 // bare returns r without its place.

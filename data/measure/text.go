@@ -21,15 +21,22 @@ type textReader struct {
 	offset int64 // bytes of the file before ready and carry
 	line   int   // lines complete before that
 	start  int64 // offset at which the current line begins
+
+	record  int64 // offset at which the record that is being read begins
+	longest int64 // bytes that a record may have
 }
 
 // textError is a byte that cannot belong to a CSV file in UTF-8.
 type textError struct {
 	line, column    int
 	found, expected string
+	cause           error
 }
 
 func (e *textError) Error() string { return e.found }
+
+// Unwrap returns the cause.
+func (e *textError) Unwrap() error { return e.cause }
 
 // Read implements io.Reader.
 func (t *textReader) Read(p []byte) (int, error) {
@@ -58,7 +65,7 @@ func (t *textReader) fill() {
 		}
 		t.begun = true
 		if bytes.HasPrefix(data, []byte("\xff\xfe")) || bytes.HasPrefix(data, []byte("\xfe\xff")) {
-			t.err = &textError{1, 1, "file begins with the byte order mark of UTF-16", "UTF-8 (save as \"CSV UTF-8\")"}
+			t.err = &textError{1, 1, "file begins with the byte order mark of UTF-16", "UTF-8 (save as \"CSV UTF-8\")", nil}
 			return
 		}
 		if bytes.HasPrefix(data, []byte("\xef\xbb\xbf")) {
@@ -75,9 +82,12 @@ func (t *textReader) fill() {
 	t.offset += int64(good)
 	switch {
 	case stop != "":
-		t.err = &textError{t.line + 1, int(t.offset-t.start) + 1, fmt.Sprintf("%s at byte %d of the file", stop, t.offset+1), t.hint(data[good])}
+		t.err = &textError{t.line + 1, int(t.offset-t.start) + 1, fmt.Sprintf("%s at byte %d of the file", stop, t.offset+1), t.hint(data[good]), nil}
 	case err != nil:
 		t.err = err
+	case t.offset-t.record > t.longest:
+		e := &LimitError{What: "record", Limit: t.longest, Unit: "bytes"}
+		t.err = &textError{t.line + 1, int(t.offset-t.start) + 1, e.Error(), "at most that (is a quotation mark not closed, or the end of a line missing?)", e}
 	default:
 		t.carry = data[good:]
 	}

@@ -43,7 +43,7 @@ func (a *assembler) row(fields []string, at func(int) position) Row {
 // fluid resolves the name of the fluid, once per name.
 func (a *assembler) fluid(name string, at func(int) position) (key string) {
 	i := a.layout.field[fluidColumn]
-	if i < 0 {
+	if i < 0 || a.spoilt[fluidColumn] {
 		return ""
 	}
 	if name == "" {
@@ -82,7 +82,7 @@ func (a *assembler) choice(c int, text string, words []string, at func(int) posi
 // or wrong, the last reported.
 func (a *assembler) number(c int, fields []string, at func(int) position) (v float64, ok bool) {
 	i := a.layout.field[c]
-	if i < 0 || !a.layout.usable[c] {
+	if i < 0 || !a.layout.usable[c] || a.spoilt[c] {
 		return 0, false
 	}
 	if fields[i] == "" {
@@ -185,8 +185,9 @@ func (a *assembler) volume(fields []string, at func(int) position) float64 {
 // conditions checks that the row states its flux in one way, with the volume that needs.
 func (a *assembler) conditions(fields []string, at func(int) position) {
 	filled := func(c int) bool { i := a.layout.field[c]; return i >= 0 && fields[i] != "" }
-	var given []int
-	for _, c := range []int{heatingRateColumn, holdingTimeColumn, lifetimeColumn, fluxColumn} {
+	var places [4]int // on the stack: this runs for every row
+	given := places[:0]
+	for _, c := range [...]int{heatingRateColumn, holdingTimeColumn, lifetimeColumn, fluxColumn} {
 		if filled(c) {
 			given = append(given, c)
 		}
