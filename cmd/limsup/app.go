@@ -46,7 +46,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		CommandNotFound:           nil,
 		Commands: []*cli.Command{
 			checkCommand(), calibrateCommand(), validateCommand(), compareCommand(), predictCommand(),
-			fluidsCommand(), isothermCommand(), embryoCommand(), fluxCommand(),
+			fluidsCommand(), isothermCommand(), embryoCommand(), fluxCommand(), plotCommand(), reportCommand(),
 		},
 	}
 	for _, c := range app.Commands {
