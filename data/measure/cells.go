@@ -57,6 +57,7 @@ type rationed struct {
 	io.Reader
 	left int64
 	over bool
+	read int64 // bytes in all
 }
 
 func (r *rationed) Read(p []byte) (int, error) {
@@ -66,6 +67,7 @@ func (r *rationed) Read(p []byte) (int, error) {
 	}
 	n, err := r.Reader.Read(p[:min(int64(len(p)), r.left)])
 	r.left -= int64(n)
+	r.read += int64(n)
 	return n, err
 }
 

@@ -199,9 +199,13 @@ func (t *tableReader) comment(number int) {
 	t.comments[number] = true
 }
 
-func (t *tableReader) row(r *sheetRow, _ *sheetReader) error {
+func (t *tableReader) row(r *sheetRow, s *sheetReader) error {
 	a := t.a
 	t.number = r.number
+	if a.share == nil {
+		size := float64(s.book.parts[s.part].UncompressedSize64)
+		a.share = func() float64 { return float64(s.xml.source.read) / size }
+	}
 	width := max(a.layout.width, r.cells[len(r.cells)-1].column)
 	t.fields = append(t.fields[:0], make([]string, width)...)
 	a.spoilt = [columnCount]bool{}
