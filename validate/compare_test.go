@@ -355,3 +355,35 @@ func ExampleParseCandidate() {
 	fmt.Println(c.Plan.Variant.Name(), c.Plan.Terms[:2], err)
 	// Output: peng-robinson, parachor [threshold slope/fluid] <nil>
 }
+
+// Ties by hand. Errors 1, −1 against 2, 0 on two folds of one row: RMSE 1 and √2; the
+// first contributes nothing, the second ±2/(2√2) per row, so that the standard error is
+// √(2·½·2)/2 = 0.7071 and the difference √2 − 1 = 0.4142 lies within it. With 3, 0 in
+// place of 2, 0 (RMSE 3/√2, contributions ±4.5/(3√2)) it is 1.0607 against 1.1213: beyond.
+func TestTiesByHand(t *testing.T) {
+	for _, tt := range []struct {
+		worse    float64
+		diff, se float64
+		tied     bool
+	}{
+		{2, math.Sqrt2 - 1, math.Sqrt2 / 2, true},
+		{3, 3/math.Sqrt2 - 1, 4.5 / (3 * math.Sqrt2), false},
+	} {
+		c := Comparison{Folds: &Folds{Names: []string{"a", "b"}}, Entries: []Entry{
+			{Name: "second", K: 1, left: scores{e: []float64{tt.worse, 0}, fold: []int{0, 1}, folds: 2}},
+			{Name: "first", K: 2, left: scores{e: []float64{1, -1}, fold: []int{0, 1}, folds: 2}},
+		}}
+		c.rank()
+		e := &c.Entries[1]
+		if e.Name != "second" || math.Abs(e.Difference-tt.diff) > 1e-14 || math.Abs(e.DifferenceSE-tt.se) > 1e-14 || e.Tied != tt.tied {
+			t.Errorf("%s: %.10g ± %.10g, tied %v; want %.10g ± %.10g, %v", e.Name, e.Difference, e.DifferenceSE, e.Tied, tt.diff, tt.se, tt.tied)
+		}
+		want := "It is distinguishable from all others"
+		if tt.tied {
+			want = "Not distinguishable from it at one standard error: second. The one with the fewest parameters among these is second."
+		}
+		if !strings.Contains(c.Verdict, want) {
+			t.Errorf("%q does not say %q", c.Verdict, want)
+		}
+	}
+}

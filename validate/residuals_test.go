@@ -190,3 +190,38 @@ func TestAssessUntuned(t *testing.T) {
 		}
 	}
 }
+
+// The uncertainty of a set pressure counts along the line of limits: u² = u(T)² +
+// (dT/dP·u(P))², with the slope from two predictions 2 kPa apart, whose curvature leaves
+// some 1e-6 of it.
+func TestSetPressureCounts(t *testing.T) {
+	lib := library(t)
+	set := simulate(t, lib, sample{threshold: 12, fluids: alkanes[:3], pressures: []float64{5e5}, repeats: 2, noise: 1, stated: 0.5, seed: 6})
+	for i := range set.Rows {
+		set.Rows[i].UPressure = 5e4
+	}
+	m, err := fit.Untuned(fit.Variant{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	a, err := AssessModel(prepared(t, set, lib, PlanOf(m)), m)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i := range a.Rows {
+		q := a.Data.Observations[i].Query()
+		var T [2]float64
+		for side, P := range []float64{5e5 - 1e3, 5e5 + 1e3} {
+			q.Pressure = P
+			p, err := m.Predict(q)
+			if err != nil {
+				t.Fatal(err)
+			}
+			T[side] = p.Temperature
+		}
+		want := math.Hypot(0.5, (T[1]-T[0])/2e3*5e4)
+		if got := a.Rows[i].U; math.Abs(got-want) > 1e-5*want || want < 0.6 {
+			t.Errorf("row %d: u = %.8g K, want %.8g K", i, got, want)
+		}
+	}
+}
