@@ -127,8 +127,8 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 	if err := enough(lay, d, &p); err != nil {
 		return nil, err
 	}
-	lik := &likelihood{system: newSystem(&p, d.Observations, lay, o.Workers), noise: p.Noise}
-	if lik.anchors, err = newAnchors(&p, d.Observations, lay); err != nil {
+	lik, err := newLikelihood(&p, d.Observations, lay, o.Workers)
+	if err != nil {
 		return nil, err
 	}
 	c := &Calibration{Plan: p, Data: d, Locations: len(lay.theta), References: lay.references}
@@ -231,6 +231,7 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings, cold
 		if err := lik.evaluate(c.theta); err != nil {
 			return nil, err
 		}
+		lik.hold()
 		lik.variances(c.psi, variance)
 		before := append([]float64(nil), c.theta...)
 		if len(c.theta) > 0 {
@@ -264,6 +265,10 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings, cold
 		}
 		moved := change(before, c.theta, lik.lay.theta)
 		if len(c.psi) > 0 {
+			if err := lik.evaluate(c.theta); err != nil {
+				return nil, err
+			}
+			lik.hold()
 			z, err := newLinearised(lik, c.theta, c.active(lik.lay))
 			if err != nil {
 				return nil, err

@@ -14,6 +14,7 @@ func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense) error {
 	if err := lik.evaluate(c.theta); err != nil {
 		return err
 	}
+	lik.hold()
 	lay := lik.lay
 	variance := lik.variances(c.psi, nil)
 	p, k := len(c.theta), len(c.psi)
@@ -82,6 +83,7 @@ func (c *Calibration) estimate(f *Free, x float64) Estimate {
 // rows fills residuals, leverages and their summaries.
 func (c *Calibration) rows(lik *likelihood, variance []float64) {
 	p := len(c.theta)
+	noise := lik.law(c.psi)
 	c.Rows = make([]RowResult, len(lik.obs))
 	var ss, sum, sd2 float64
 	n := 0
@@ -94,7 +96,7 @@ func (c *Calibration) rows(lik *likelihood, variance []float64) {
 				g[at] += derivative(&l.d, a)
 			}
 		}
-		d := lik.density(i, r, variance[i])
+		d := lik.density(&noise, i, r, variance[i])
 		row := RowResult{Index: i, Predicted: lik.obs[i].Temperature - r, Residual: r, Variance: variance[i],
 			Standardised: r / math.Sqrt(variance[i]), Gradient: g, Log10Flux: l.lnJ / math.Ln10}
 		row.Leverage = math.Min(1, d.irr*quadratic(c.Covariance, g))

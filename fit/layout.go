@@ -62,6 +62,7 @@ type layout struct {
 	cellOf []int32 // per observation
 	cells  []cell
 
+	degrees    int               // index into ψ of the degrees of freedom of the noise, or −1
 	references map[string]string // of offsets: parameter scope → group held at zero
 	priors     []priorOn
 }
@@ -93,7 +94,7 @@ func (e *TooFewError) Error() string {
 func newLayout(p *Plan, obs []Observation) (*layout, error) {
 	n := len(obs)
 	l := &layout{index: make([][locations]int32, n), fixed: make([][locations]float64, n),
-		spread: make([]int32, n), sd: make([]float64, n), cellOf: make([]int32, n), references: map[string]string{}}
+		spread: make([]int32, n), sd: make([]float64, n), cellOf: make([]int32, n), degrees: -1, references: map[string]string{}}
 	for i, name := range locationNames {
 		if err := l.place(p, obs, name, func(o, at int, value float64) {
 			l.index[o][i] = int32(at)
@@ -103,6 +104,9 @@ func newLayout(p *Plan, obs []Observation) (*layout, error) {
 		}
 	}
 	if err := l.placeSpread(p, obs); err != nil {
+		return nil, err
+	}
+	if err := l.placeDegrees(p); err != nil {
 		return nil, err
 	}
 	for _, r := range p.Priors {
@@ -228,6 +232,25 @@ func (l *layout) placeSpread(p *Plan, obs []Observation) error {
 	for o := range obs {
 		l.spread[o] = int32(at[groupOf(t.By, &obs[o].Row)])
 	}
+	return nil
+}
+
+// placeDegrees lays out the degrees of freedom of Student noise.
+func (l *layout) placeDegrees(p *Plan) error {
+	t, free := p.term(DegreesOfNoise)
+	if !free {
+		return nil
+	}
+	if p.Noise.Kind != Student {
+		return &OptionError{"tune", t.String(), "student noise; " + string(p.Noise.Kind) + " noise has no degrees of freedom"}
+	}
+	q, err := parameterOf(DegreesOfNoise, &p.Variant)
+	if err != nil {
+		return err
+	}
+	lo, hi := p.bounds(q)
+	l.degrees = len(l.psi)
+	l.psi = append(l.psi, Free{Name: DegreesOfNoise, Role: RoleValue, Unit: q.Unit, Start: clamp(p.Noise.Degrees, lo, hi), Lower: lo, Upper: hi, pool: -1})
 	return nil
 }
 

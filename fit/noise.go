@@ -13,8 +13,12 @@ type NoiseKind string
 // The distributions.
 const (
 	Gaussian NoiseKind = "gaussian"
-	Student  NoiseKind = "student"  // heavy tails: single rows far off pull little
-	Survival NoiseKind = "survival" // each droplet boils at random with the flux it sees
+	Student  NoiseKind = "student" // heavy tails: single rows far off pull little
+	// Survival lets each sample boil at random with the flux it sees, see survival.go.
+	// Rows without a volume and a heating rate, holding time or lifetime have no such
+	// law; they stay Gaussian, and the calibration says so. A row with a lifetime counts
+	// as one waiting time: for a mean of several that is less than it tells.
+	Survival NoiseKind = "survival"
 )
 
 // Noise is the distribution of the readings about the predicted limits.
@@ -23,12 +27,25 @@ type Noise struct {
 	// Degrees are the degrees of freedom of Student noise; 0 means 4, the smallest
 	// whole number with a finite fourth moment, common practice for robust regression.
 	Degrees float64
+	// Estimate frees the degrees of freedom, as the term "degrees" does; Degrees are
+	// then their start.
+	Estimate bool
 }
+
+// Bounds of the degrees of freedom. Below 1 there is no mean; above 100 no data set
+// tells Student's distribution from the normal one.
+const (
+	fewestDegrees = 1
+	mostDegrees   = 100
+)
 
 func (n Noise) complete() (Noise, error) {
 	fill(&n.Kind, Gaussian)
 	switch n.Kind {
 	case Gaussian, Survival:
+		if n.Estimate {
+			return n, &OptionError{"noise", string(n.Kind), "student for degrees of freedom to be estimated"}
+		}
 	case Student:
 		if n.Degrees == 0 {
 			n.Degrees = 4
@@ -42,27 +59,53 @@ func (n Noise) complete() (Noise, error) {
 	return n, nil
 }
 
+// Information is what one reading with variance v in K² tells about its own limit,
+// in 1/K², and about v, in 1/K⁴: the expected curvature of −ln of its density. For
+// survival noise it is that of a reading without the scatter of boiling.
+func (n Noise) Information(v float64) (limit, variance float64) {
+	l := n.law()
+	d := l.of(0, v, false)
+	return d.irr, d.ivv
+}
+
 // density is −ln of the density (or probability) of one row with its derivatives.
 type density struct {
 	nll    float64
 	dr, dv float64 // ∂nll/∂r, ∂nll/∂v
 	irr    float64 // information about r: ∂²nll/∂r² or its expectation, ≥ 0
-	ivv    float64 // information about v
+	ivv    float64 // information about v; not of survival rows
+}
+
+// law is a noise with all that its densities share.
+type law struct {
+	student bool
+	ν       float64
+	c       float64 // −ln of the normalisation of Student's density at unit scale
+}
+
+func (n Noise) law() law { return lawOf(n.Kind == Student, n.Degrees) }
+
+func lawOf(student bool, ν float64) law {
+	l := law{student: student, ν: ν}
+	if student {
+		a, _ := math.Lgamma((ν + 1) / 2)
+		b, _ := math.Lgamma(ν / 2)
+		l.c = 0.5*math.Log(ν*math.Pi) + b - a
+	}
+	return l
 }
 
 // of returns the density of the residual r with variance v. An intact row says
 // only that the limit lies above the reading.
-func (n *Noise) of(r, v float64, intact bool) density {
+func (n *law) of(r, v float64, intact bool) density {
 	switch {
-	case n.Kind == Student && intact:
+	case n.student && intact:
 		return n.studentIntact(r, v)
-	case n.Kind == Student:
-		ν := n.Degrees
+	case n.student:
+		ν := n.ν
 		w := (ν + 1) / (ν*v + r*r)
-		a, _ := math.Lgamma((ν + 1) / 2)
-		b, _ := math.Lgamma(ν / 2)
 		return density{
-			nll: 0.5*(ν+1)*math.Log1p(r*r/(ν*v)) + 0.5*math.Log(ν*math.Pi*v) + b - a,
+			nll: 0.5*(ν+1)*math.Log1p(r*r/(ν*v)) + 0.5*math.Log(v) + n.c,
 			dr:  w * r,
 			dv:  0.5/v - 0.5*w*r*r/v,
 			irr: (ν + 1) / ((ν + 3) * v),
@@ -108,13 +151,13 @@ func lnNormal(z float64) (lnΦ, hazard float64) {
 }
 
 // studentIntact is −ln of the probability that a Student variable exceeds r/√v.
-func (n *Noise) studentIntact(r, v float64) density {
+func (n *law) studentIntact(r, v float64) density {
 	s := math.Sqrt(v)
-	t := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: n.Degrees}
+	t := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: n.ν}
 	z := -r / s
 	F := t.CDF(z)
 	h := t.Prob(z) / F
 	// dlnprob/dz = −(ν+1)z/(ν+z²)
-	c := math.Max(0, h*((n.Degrees+1)*z/(n.Degrees+z*z)+h))
+	c := math.Max(0, h*((n.ν+1)*z/(n.ν+z*z)+h))
 	return density{nll: -math.Log(F), dr: h / s, dv: 0.5 * h * z / v, irr: c / v, ivv: 0.25 * c * z * z / (v * v)}
 }

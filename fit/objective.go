@@ -18,19 +18,52 @@ type likelihood struct {
 	*system
 	anchors []anchored
 	noise   Noise
+
+	// As of the last hold: variance of each row from its stated uncertainties in K², and
+	// the steepness κ of the hazard of its sample in 1/K, 0 for rows without.
+	stated, steepness []float64
+}
+
+func newLikelihood(p *Plan, obs []Observation, lay *layout, workers int) (*likelihood, error) {
+	l := &likelihood{system: newSystem(p, obs, lay, workers), noise: p.Noise,
+		stated: make([]float64, len(obs)), steepness: make([]float64, len(obs))}
+	var err error
+	l.anchors, err = newAnchors(p, obs, lay)
+	return l, err
+}
+
+// hold takes the widths of the rows at the limits of the last evaluation. They are
+// constants of a search for θ: their own dependence on θ carries next to no
+// information (a decade of flux changes κ by 1 % and moves the limit by a third of a
+// kelvin), and with the widths held the scores have expectation zero at the truth.
+func (l *likelihood) hold() {
+	for i := range l.obs {
+		l.stated[i] = l.system.stated(i)
+		l.steepness[i] = 0
+		if l.noise.Kind == Survival && l.obs[i].Hazard > 0 {
+			l.steepness[i] = l.limit[i].steepness
+		}
+	}
+}
+
+// law is the noise at the spreads ψ.
+func (l *likelihood) law(psi []float64) law {
+	if at := l.lay.degrees; at >= 0 {
+		return lawOf(true, psi[at])
+	}
+	return l.noise.law()
 }
 
 // terms is −ln L with its derivatives with respect to θ. grad and curv may be nil.
-// The variance of each row is taken at the limits of the evaluation, as a constant.
 func (l *likelihood) terms(theta, psi []float64, variance []float64, grad []float64, curv *mat.SymDense) (float64, error) {
 	if err := l.evaluate(theta); err != nil {
 		return 0, err
 	}
 	clearAll(grad, curv)
 	value := 0.0
+	noise := l.law(psi)
 	for i := range l.obs {
-		v := variance[i]
-		d := l.density(i, l.residual(i), v)
+		d := l.density(&noise, i, l.residual(i), variance[i])
 		value += d.nll
 		if grad == nil {
 			continue
@@ -53,8 +86,12 @@ func (l *likelihood) terms(theta, psi []float64, variance []float64, grad []floa
 }
 
 // density is the noise density of observation i for a residual r.
-func (l *likelihood) density(i int, r, v float64) density {
-	return l.noise.of(r, v, l.obs[i].Outcome != 0)
+func (l *likelihood) density(noise *law, i int, r, v float64) density {
+	intact := l.obs[i].Outcome != 0
+	if κ := l.steepness[i]; κ > 0 {
+		return boiling(r, v, κ, l.obs[i].Hazard, intact)
+	}
+	return noise.of(r, v, intact)
 }
 
 // addRow adds the derivatives of one row: slope is ∂nll/∂T_predicted, info the
@@ -68,12 +105,16 @@ func (l *likelihood) addRow(i int, slope, info float64, grad []float64, curv *ma
 		}
 		da := derivative(d, a)
 		grad[ia] += slope * da
-		for b := a; curv != nil && b < len(idx); b++ {
-			ib := int(idx[b])
-			if ib < 0 {
-				continue
+		if curv == nil {
+			continue
+		}
+		// The locations of a row are laid out in order, so that this is the upper triangle.
+		raw := curv.RawSymmetric()
+		row := raw.Data[ia*raw.Stride:]
+		for b := a; b < len(idx); b++ {
+			if ib := int(idx[b]); ib >= 0 {
+				row[ib] += info * da * derivative(d, b)
 			}
-			add(curv, ia, ib, info*da*derivative(d, b))
 		}
 	}
 }
@@ -145,14 +186,14 @@ func clearAll(grad []float64, curv *mat.SymDense) {
 	}
 }
 
-// variances are v_i at the limits of the last evaluation and the spreads ψ.
+// variances are v_i at the limits held and the spreads ψ.
 func (l *likelihood) variances(psi, dst []float64) []float64 {
 	if dst == nil {
 		dst = make([]float64, len(l.obs))
 	}
 	for i := range dst {
 		sd := l.lay.sdOf(i, psi)
-		dst[i] = l.stated(i) + float64(sd*sd)
+		dst[i] = l.stated[i] + float64(sd*sd)
 	}
 	return dst
 }

@@ -3,6 +3,7 @@ package fit
 import (
 	"errors"
 	"fmt"
+	"math"
 
 	"limsup/data/fluid"
 	"limsup/data/measure"
@@ -18,6 +19,9 @@ type Observation struct {
 	// Target is that flux. Other rows stand at the threshold.
 	OwnFlux bool
 	Target  nucleation.Target
+	// Hazard is −ln of the share of such samples that survive up to Target: ln 2 at a
+	// median, 1 at a mean waiting time; 0 where the row states no volume and time or rate.
+	Hazard float64
 	// Start is the limit predicted with the start values, in K.
 	Start float64
 }
@@ -52,19 +56,20 @@ func (d *Data) Subset(keep func(i int) bool) *Data {
 	return s
 }
 
-// rowTarget is the flux of a row, from the most direct statement it carries.
-func rowTarget(r *measure.Row) (nucleation.Target, bool) {
+// rowTarget is the flux of a row, from the most direct statement it carries, and
+// the hazard there.
+func rowTarget(r *measure.Row) (t nucleation.Target, own bool, hazard float64) {
 	switch {
 	case r.Flux > 0:
-		return nucleation.Stated(r.Flux), true
+		return nucleation.Stated(r.Flux), true, 0
 	case r.Lifetime > 0 && r.Volume > 0:
-		return nucleation.Lived(r.Volume, r.Lifetime), true
+		return nucleation.Lived(r.Volume, r.Lifetime), true, 1
 	case r.HoldingTime > 0 && r.Volume > 0:
-		return nucleation.Held(r.Volume, r.HoldingTime), true
+		return nucleation.Held(r.Volume, r.HoldingTime), true, math.Ln2
 	case r.HeatingRate > 0 && r.Volume > 0:
-		return nucleation.Heated(r.Volume, r.HeatingRate), true
+		return nucleation.Heated(r.Volume, r.HeatingRate), true, math.Ln2
 	}
-	return nucleation.Target{}, false
+	return nucleation.Target{}, false, 0
 }
 
 // Prepare pairs rows with fluids and finds out which of them the plan's variant
@@ -95,7 +100,7 @@ func Prepare(set *measure.Set, lib *fluid.Library, p Plan) (*Data, error) {
 		}
 		o := Observation{Row: *r, Record: rec}
 		o.Key = rec.Key
-		o.Target, o.OwnFlux = rowTarget(r)
+		o.Target, o.OwnFlux, o.Hazard = rowTarget(r)
 		values, err := p.startValues(r)
 		if err != nil {
 			return nil, err
@@ -313,6 +318,6 @@ func (ph *Physics) limitOrSpinodal(P float64, t nucleation.Target, own bool, gue
 // flux from the row.
 func (o *Observation) FluxQuery() Query {
 	c := *o
-	c.Target, c.OwnFlux = rowTarget(&o.Row)
+	c.Target, c.OwnFlux, c.Hazard = rowTarget(&o.Row)
 	return c.Query()
 }

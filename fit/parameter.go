@@ -26,6 +26,7 @@ const (
 	Tolman         = "tolman"
 	Offset         = "offset"
 	Spread         = "spread"
+	DegreesOfNoise = "degrees" // of freedom of Student noise
 )
 
 // ParameterTable returns the parameters in their order.
@@ -40,6 +41,7 @@ func ParameterTable() []Parameter {
 		{Tolman, "nm", "Tolman length", 0, -0.5, 0.5},
 		{Offset, "K", "bias of a method against the reference method", 0, -30, 30},
 		{Spread, "K", "standard deviation beyond the stated uncertainties", 1, 0, 50},
+		{DegreesOfNoise, "1", "degrees of freedom of student noise", 4, fewestDegrees, mostDegrees},
 	}
 }
 
@@ -110,6 +112,9 @@ func ParseTerm(s string) (Term, error) {
 		if !slices.Contains([]By{ByFluid, ByMethod, ByBatch}, t.By) {
 			return t, &OptionError{"tune", s, "NAME, NAME/fluid, NAME/method or NAME/batch, the last three optionally with /pooled"}
 		}
+	}
+	if t.Name == DegreesOfNoise && t.By != Shared {
+		return t, &OptionError{"tune", s, "degrees, shared by all rows"}
 	}
 	if len(parts) > 2 {
 		if parts[2] != "pooled" || len(parts) > 3 {
@@ -210,6 +215,7 @@ func (p Plan) Complete() (Plan, error) {
 	if !seen[Spread] && !p.fixed(Spread) {
 		p.Terms = append(p.Terms, Term{Name: Spread})
 	}
+	p.completeDegrees(seen)
 	for _, list := range [][]Setting{p.Fixed, p.Starts} {
 		for _, s := range list {
 			q, err := parameterOf(s.Name, &p.Variant)
@@ -240,8 +246,8 @@ func (p Plan) Complete() (Plan, error) {
 		if !(r.Spread > 0) {
 			return p, &OptionError{"prior of " + r.Name, fmt.Sprintf("%.10g", r.Spread), "a standard deviation > 0"}
 		}
-		if r.Name == Spread {
-			return p, &OptionError{"prior of spread", fmt.Sprintf("%.10g", r.Mean), "a prior on another parameter; bound the spread instead"}
+		if r.Name == Spread || r.Name == DegreesOfNoise {
+			return p, &OptionError{"prior of " + r.Name, fmt.Sprintf("%.10g", r.Mean), "a prior on another parameter; bound this one instead"}
 		}
 	}
 	for _, a := range p.Anchors {
@@ -253,6 +259,25 @@ func (p Plan) Complete() (Plan, error) {
 		}
 	}
 	return p, nil
+}
+
+// completeDegrees brings the degrees of freedom of the noise and the parameter of
+// that name together.
+func (p *Plan) completeDegrees(seen map[string]bool) {
+	if p.Noise.Kind != Student {
+		return // newLayout refuses a free parameter
+	}
+	for _, list := range [][]Setting{p.Fixed, p.Starts} {
+		for _, s := range list {
+			if s.Name == DegreesOfNoise {
+				p.Noise.Degrees = s.Value
+			}
+		}
+	}
+	if p.Noise.Estimate && !seen[DegreesOfNoise] && !p.fixed(DegreesOfNoise) {
+		p.Terms = append(p.Terms, Term{Name: DegreesOfNoise})
+	}
+	_, p.Noise.Estimate = p.term(DegreesOfNoise)
 }
 
 // idle tells why a parameter has no effect under a variant, or "".

@@ -88,10 +88,3 @@ func (m *Model) unmeasured(name string, q *Query, f lookup, d float64) Effect {
 	}
 	return out
 }
-
-// Information is what one reading with variance v in K² tells about its own limit,
-// in 1/K², and about v, in 1/K⁴: the expected curvature of −ln of its density.
-func (n Noise) Information(v float64) (limit, variance float64) {
-	d := n.of(0, v, false)
-	return d.irr, d.ivv
-}

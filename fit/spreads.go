@@ -68,6 +68,7 @@ func (z *linearised) terms(psi []float64, derivatives bool) float64 {
 	}
 	clearAll(grad, curv)
 	value := 0.0
+	noise := l.law(psi)
 	for i := range l.obs {
 		r := z.r[i]
 		idx, d := &l.lay.index[i], &l.limit[i].d
@@ -76,7 +77,7 @@ func (z *linearised) terms(psi []float64, derivatives bool) float64 {
 				r -= derivative(d, a) * z.delta[at]
 			}
 		}
-		d1 := l.density(i, r, z.variance[i])
+		d1 := l.density(&noise, i, r, z.variance[i])
 		value += d1.nll
 		if derivatives {
 			l.addRow(i, -d1.dr, d1.irr, grad, curv)
@@ -163,21 +164,24 @@ func isCondition(err error) bool {
 	return ok
 }
 
-// spreadStep is the relative step of the central differences of A in ψ: the
-// cube root of the rounding of A balances truncation against cancellation for
-// first, the fourth root for second differences.
-const spreadStep = 2e-4
-
 // estimate minimises A from psi and returns the new spreads, and their covariance
 // from the curvature of A (nil when it is not positive definite).
 //
 // The search is in the variances w = ψ²: A is even in each spread, so that as a
-// function of ψ it is stationary at zero whether or not the minimum is there.
+// function of ψ it is stationary at zero whether or not the minimum is there. For
+// degrees of freedom ν it is in w = 1/ν, in which the normal limit is an ordinary
+// point.
 func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covariance *mat.SymDense, err error) {
 	k := len(psi)
 	params := make([]leastsq.Param, k)
 	floor := make([]float64, k) // size below which a change of a variance means nothing
 	for i, f := range free {
+		if f.Name == DegreesOfNoise {
+			w := 1 / psi[i]
+			params[i] = leastsq.Param{Name: f.Label(), Start: clamp(w, 1/f.Upper, 1/f.Lower), Lower: 1 / f.Upper, Upper: 1 / f.Lower, Scale: 0.1}
+			floor[i] = 0.1
+			continue
+		}
 		lo, hi := f.Lower*f.Lower, f.Upper*f.Upper
 		w := psi[i] * psi[i]
 		params[i] = leastsq.Param{Name: f.Label(), Start: clamp(w, lo, hi), Lower: lo, Upper: hi, Scale: math.Max(w, 1e-4*f.Start*f.Start)}
@@ -186,6 +190,7 @@ func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covarian
 			floor[i] = math.Max(lo, 1e-6*f.Start*f.Start)
 		}
 	}
+	roots := func(w []float64) []float64 { return unfold(w, free) }
 	eval := func(w, grad []float64, curv *mat.SymDense) (float64, error) {
 		v, ok := z.adjusted(roots(w))
 		if !ok {
@@ -194,7 +199,7 @@ func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covarian
 		if grad == nil && curv == nil {
 			return v, nil
 		}
-		return v, z.differences(w, v, floor, grad, curv)
+		return v, z.differences(w, v, floor, free, grad, curv)
 	}
 	res, err := leastsq.Minimize(leastsq.Objective{Params: params, Size: len(z.l.obs), Eval: eval}, leastsq.Settings{Local: true})
 	if err != nil {
@@ -202,15 +207,22 @@ func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covarian
 	}
 	x = roots(res.X)
 	g, h := make([]float64, k), mat.NewSymDense(k, nil)
-	if err := z.hessian(res.X, res.Value, floor, g, h); err != nil {
+	if err := z.hessian(res.X, res.Value, floor, free, g, h); err != nil {
 		return x, nil, nil
 	}
-	// From variances to spreads: w = ψ², dw = 2ψ dψ.
+	// From w to ψ by the chain rule.
+	slope, bend := make([]float64, k), make([]float64, k)
+	for i, f := range free {
+		slope[i], bend[i] = 2*x[i], 2
+		if f.Name == DegreesOfNoise {
+			slope[i], bend[i] = -1/(x[i]*x[i]), 2/(x[i]*x[i]*x[i])
+		}
+	}
 	for i := range k {
 		for j := i; j < k; j++ {
-			v := 4 * x[i] * x[j] * h.At(i, j)
+			v := slope[i] * slope[j] * h.At(i, j)
 			if i == j {
-				v += 2 * g[i]
+				v += bend[i] * g[i]
 			}
 			h.SetSym(i, j, v)
 		}
@@ -241,20 +253,25 @@ func (z *linearised) typicalVariance() float64 {
 	return s/float64(len(z.r)) + 1e-12
 }
 
-func roots(w []float64) []float64 {
+// unfold returns ψ from the variables w of the search.
+func unfold(w []float64, free []Free) []float64 {
 	x := make([]float64, len(w))
 	for i := range w {
-		x[i] = math.Sqrt(math.Max(0, w[i]))
+		if free[i].Name == DegreesOfNoise {
+			x[i] = 1 / w[i]
+		} else {
+			x[i] = math.Sqrt(math.Max(0, w[i]))
+		}
 	}
 	return x
 }
 
 // differences fills gradient and a positive curvature of A by differences.
-func (z *linearised) differences(w []float64, v float64, floor, grad []float64, curv *mat.SymDense) error {
+func (z *linearised) differences(w []float64, v float64, floor []float64, free []Free, grad []float64, curv *mat.SymDense) error {
 	k := len(w)
 	h := mat.NewSymDense(k, nil)
 	g := make([]float64, k)
-	if err := z.hessian(w, v, floor, g, h); err != nil {
+	if err := z.hessian(w, v, floor, free, g, h); err != nil {
 		return err
 	}
 	copy(grad, g)
@@ -281,7 +298,7 @@ const varianceStep = 1e-3
 
 // hessian fills the gradient and the Hessian of A at the variances w by central
 // differences; the centre is moved up by one step where it stands at zero.
-func (z *linearised) hessian(w []float64, v float64, floor, g []float64, h *mat.SymDense) error {
+func (z *linearised) hessian(w []float64, v float64, floor []float64, free []Free, g []float64, h *mat.SymDense) error {
 	k := len(w)
 	step := make([]float64, k)
 	centre := append([]float64(nil), w...)
@@ -298,7 +315,7 @@ func (z *linearised) hessian(w []float64, v float64, floor, g []float64, h *mat.
 		if j >= 0 {
 			y[j] += sj * step[j]
 		}
-		a, ok := z.adjusted(roots(y))
+		a, ok := z.adjusted(unfold(y, free))
 		if !ok {
 			return 0, errSingular
 		}
