@@ -56,34 +56,44 @@ func maximumLikelihood(rows []reading) (lnL, spread float64, ok bool) {
 		return 0, 0, false
 	}
 	top = math.Max(4*top, 1e-12*least)
-	const scan = 200
+	const scan = 64
 	at := func(i int) float64 { // from 1e-12 of the top, evenly in ln q; s = √q
 		if i <= 0 && least > 0 {
 			return 0
 		}
 		return top * math.Pow(10, -12*(1-float64(min(max(i, 0), scan))/scan))
 	}
-	best := 0
+	best, lnL := 0, math.Inf(-1)
 	for i := range scan + 1 {
-		if logLikelihood(rows, at(i)) > logLikelihood(rows, at(best)) {
-			best = i
+		if l := logLikelihood(rows, at(i)); l > lnL {
+			best, lnL = i, l
 		}
 	}
+	q := at(best)
 	lo, hi := at(best-1), at(best+1)
 	golden := (math.Sqrt(5) - 1) / 2
-	for range 100 {
-		a, b := hi-golden*(hi-lo), lo+golden*(hi-lo)
-		if logLikelihood(rows, a) < logLikelihood(rows, b) {
-			lo = a
+	a, b := hi-golden*(hi-lo), lo+golden*(hi-lo)
+	la, lb := logLikelihood(rows, a), logLikelihood(rows, b)
+	for range 45 { // 0.618⁴⁵ is the square root of rounding
+		if la < lb {
+			lo, a, la = a, b, lb
+			b = lo + golden*(hi-lo)
+			lb = logLikelihood(rows, b)
 		} else {
-			hi = b
+			hi, b, lb = b, a, la
+			a = hi - golden*(hi-lo)
+			la = logLikelihood(rows, a)
 		}
 	}
-	q := 0.5 * (lo + hi)
-	if b := at(best - 1); b == 0 && logLikelihood(rows, 0) >= logLikelihood(rows, q) {
-		q = 0
+	// The grid point stands unless the search found better: at the end of the interval it
+	// is the maximum itself.
+	if l := max(la, lb); l > lnL {
+		lnL, q = l, a
+		if lb > la {
+			q = b
+		}
 	}
-	return logLikelihood(rows, q), math.Sqrt(q), true
+	return lnL, math.Sqrt(q), true
 }
 
 // criteria returns

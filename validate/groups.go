@@ -1,10 +1,6 @@
 package validate
 
-import (
-	"math"
-
-	"limsup/fit"
-)
+import "math"
 
 // Group summarises the residuals of a fluid, method, batch or pressure. Intact rows
 // are counted, and enter nothing else.
@@ -26,33 +22,30 @@ type Group struct {
 func (a *Assessment) groups() []Group {
 	obs := a.Data.Observations
 	bands := pressureBands(obs)
-	at := map[*fit.Observation]string{}
-	for i := range obs {
-		at[&obs[i]] = bands[i]
-	}
 	var out []Group
 	for _, by := range []struct {
 		word  string
-		label func(o *fit.Observation) string
+		label func(i int) string
 	}{
-		{"fluid", func(o *fit.Observation) string { return o.Record.Key }},
-		{"method", func(o *fit.Observation) string { return o.Method }},
-		{"batch", func(o *fit.Observation) string { return o.Batch }},
-		{"pressure", func(o *fit.Observation) string { return at[o] }},
+		{"fluid", func(i int) string { return obs[i].Record.Key }},
+		{"method", func(i int) string { return obs[i].Method }},
+		{"batch", func(i int) string { return obs[i].Batch }},
+		{"pressure", func(i int) string { return bands[i] }},
 	} {
 		var names []string
-		seen := map[string]bool{}
+		members := map[string][]int{}
 		for i := range obs {
-			if g := by.label(&obs[i]); !seen[g] {
-				seen[g] = true
+			g := by.label(i)
+			if members[g] == nil {
 				names = append(names, g)
 			}
+			members[g] = append(members[g], i)
 		}
 		if by.word != "fluid" && len(names) < 2 {
 			continue
 		}
 		for _, name := range names {
-			g := a.group(by.word, name, func(o *fit.Observation) bool { return by.label(o) == name })
+			g := a.group(by.word, name, members[name])
 			if g.Name == "" {
 				g.Name = none
 			}
@@ -65,15 +58,12 @@ func (a *Assessment) groups() []Group {
 // none names the group of rows without a method or batch.
 const none = "(none)"
 
-// group sums over the rows that belong to it, in row order.
-func (a *Assessment) group(by, name string, has func(*fit.Observation) bool) Group {
+// group sums over its members, in row order.
+func (a *Assessment) group(by, name string, members []int) Group {
 	g := Group{By: by, Name: name}
 	var e, left []float64
-	for i := range a.Rows {
+	for _, i := range members {
 		r := &a.Rows[i]
-		if !has(&a.Data.Observations[i]) {
-			continue
-		}
 		if r.Intact {
 			g.Intact++
 			continue

@@ -40,7 +40,11 @@ func (c *Comparison) verdict() string {
 	if len(best.left.e) == 0 {
 		return "No row boiled, so no variant can be preferred."
 	}
-	s := fmt.Sprintf("Smallest error on left-out rows: %s, %.3g K ± %.2g K.", best.Name, best.CVRMSE, best.CVSE)
+	finished := ""
+	if len(c.Unfinished) > 0 {
+		finished = " among the finished"
+	}
+	s := fmt.Sprintf("Smallest error on left-out rows%s: %s, %.3g K ± %.2g K.", finished, best.Name, best.CVRMSE, best.CVSE)
 	_, folds := best.left.differenceSE(nil)
 	switch {
 	case len(c.Entries) == 1:

@@ -175,7 +175,11 @@ func PlanOf(m *fit.Model) fit.Plan {
 
 // summarise fills what follows from the rows.
 func (a *Assessment) summarise() {
-	all := a.group("all", "", func(*fit.Observation) bool { return true })
+	every := make([]int, len(a.Rows))
+	for i := range every {
+		every[i] = i
+	}
+	all := a.group("all", "", every)
 	a.Boiled, a.Intact, a.RMSE, a.Bias, a.MeanAbsErr = all.N, all.Intact, all.RMSE, all.Bias, all.MeanAbsErr
 	a.Groups = a.groups()
 	a.Trends = a.trends()

@@ -225,3 +225,19 @@ func TestSetPressureCounts(t *testing.T) {
 		}
 	}
 }
+
+// Prepare with the plan of a model asks the model itself, not its published start: the
+// Redlich-Kwong equation tuned to a low threshold predicts rows that it does not at 10¹².
+func TestPlanOfStartsWhereTheModelIs(t *testing.T) {
+	lib := library(t)
+	set := published(t, lib)
+	m := &fit.Model{Variant: fit.Variant{Equation: "redlich-kwong"}, Calibrated: true,
+		Parameters: []fit.Estimate{{Name: fit.Threshold, Role: fit.RoleValue, Unit: "1", Value: 6, Start: 12, Lower: 0, Upper: 35}}}
+	if err := m.Prepare(); err != nil {
+		t.Fatal(err)
+	}
+	with, without := len(prepared(t, set, lib, PlanOf(m)).Observations), len(prepared(t, set, lib, fit.Plan{Variant: m.Variant}).Observations)
+	if with != 35 || without != 31 {
+		t.Errorf("%d rows with the model's threshold, %d at the start; want 35 and 31", with, without)
+	}
+}
