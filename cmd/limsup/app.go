@@ -8,7 +8,6 @@ import (
 
 	"github.com/urfave/cli/v2"
 
-	"limsup/data/caution"
 	"limsup/data/quantity"
 )
 
@@ -19,27 +18,34 @@ func run(ctx context.Context, stdout, stderr io.Writer, args []string) error {
 	if len(args) == 0 {
 		args = []string{"limsup"}
 	}
-	ordered, err := arrange(app, args[1:])
-	if err != nil {
+	line, err := parse(app, args[1:])
+	switch {
+	case line.version:
+		_, err = fmt.Fprintf(stdout, "%s %s\n", app.Name, app.Version)
 		return err
+	case line.help, line.command == "help", len(args) == 1:
+		return showHelp(app, line)
+	case err != nil:
+		return err
+	case line.command == "":
+		return &usageError{"no command (limsup help lists them)"}
 	}
-	return app.RunContext(ctx, append([]string{args[0]}, ordered...))
+	return app.RunContext(ctx, append([]string{args[0]}, line.ordered()...))
 }
 
 func newApp(stdout, stderr io.Writer) *cli.App {
 	app := &cli.App{
-		Name:      "limsup",
-		Usage:     "tune superheat models to measured superheat limits, and predict with them",
-		UsageText: "limsup COMMAND [--flag value ...]",
-		Description: "A liquid can be heated far above its boiling point before it boils by itself, at its superheat limit. " +
-			"limsup tunes a cubic equation of state and the threshold of nucleation to your measured limits, says how good the result is, and exports the tuned model.\n\n" +
-			strings.Join(caution.Sentences(), " "),
+		Name:                      "limsup",
+		Usage:                     "tune superheat models to measured superheat limits, and predict with them",
+		UsageText:                 "limsup COMMAND [--flag value ...]",
+		Description:               about(),
 		Version:                   version(),
 		Writer:                    stdout,
 		ErrWriter:                 stderr,
-		HideVersion:               false,
+		HideVersion:               true, // run answers --version and --help
+		HideHelp:                  true,
 		DisableSliceFlagSeparator: true,
-		HideHelpCommand:           false,
+		HideHelpCommand:           true,
 		ExitErrHandler:            func(*cli.Context, error) {}, // main sets the status
 		OnUsageError:              onUsageError,
 		Action:                    noCommand,
@@ -47,12 +53,14 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Commands: []*cli.Command{
 			checkCommand(), calibrateCommand(), validateCommand(), compareCommand(), predictCommand(),
 			fluidsCommand(), isothermCommand(), embryoCommand(), fluxCommand(), plotCommand(), reportCommand(),
+			helpCommand(), manCommand(), completionCommand(),
 		},
 	}
 	for _, c := range app.Commands {
 		c.OnUsageError = onUsageError
-		c.CustomHelpTemplate = commandHelp
-		c.HideHelpCommand = true
+		c.HideHelp, c.HideHelpCommand = true, true
+		c.Flags = append(c.Flags, general()...)
+		c.Before = prepare
 	}
 	return app
 }
@@ -68,7 +76,7 @@ func onUsageError(c *cli.Context, err error, _ bool) error {
 				names = append(names, f.Names()...)
 			}
 		}
-		return &usageError{fmt.Sprintf("%s has no flag --%s%s", commandName(c), name, suggest("--", quantity.Near(name, names)))}
+		return &usageError{fmt.Sprintf("%s has no flag --%s%s", commandName(c), shown(name), suggest("--", quantity.Near(name, names)))}
 	}
 	return &usageError{commandName(c) + ": " + text}
 }
@@ -91,34 +99,29 @@ func suggest(prefix string, near []string) string {
 	return "; did you mean " + strings.Join(quoted, " or ") + "?"
 }
 
-// noCommand answers a call without a command, or with an unknown one.
-func noCommand(c *cli.Context) error {
-	if !c.Args().Present() {
-		return cli.ShowAppHelp(c)
-	}
+// noCommand answers a call with an unknown command.
+func noCommand(c *cli.Context) error { return unknownCommand(c.App, c.Args().First()) }
+
+func unknownCommand(app *cli.App, name string) error {
+	return &usageError{fmt.Sprintf("no command %q%s (limsup help lists them)", name, suggest("", quantity.Near(name, commandNames(app))))}
+}
+
+func commandNames(app *cli.App) []string {
 	var names []string
-	for _, k := range c.App.Commands {
+	for _, k := range app.Commands {
 		names = append(names, k.Name)
 	}
-	name := c.Args().First()
-	return &usageError{fmt.Sprintf("no command %q%s (limsup help lists the commands)", name, suggest("", quantity.Near(name, names)))}
+	return names
 }
 
 // noArguments refuses anything that is not a flag.
 func noArguments(c *cli.Context) error {
 	if c.Args().Present() {
-		return &usageError{fmt.Sprintf("%s takes flags only; %q is left over", commandName(c), c.Args().First())}
+		text := fmt.Sprintf("%s takes flags only; %q is left over", commandName(c), c.Args().First())
+		if c.Args().First() == "help" {
+			text += " (limsup help " + c.Command.Name + " shows its page)"
+		}
+		return &usageError{text}
 	}
 	return nil
 }
-
-// commandHelp is the help page of a command.
-const commandHelp = `limsup {{.Name}}: {{.Usage}}
-
-{{if .Description}}{{wrap .Description 0}}
-
-{{end}}Flags (before or after anything else; repeat a flag to give several values):
-{{range .VisibleFlags}}   {{.}}
-{{end}}{{if .ArgsUsage}}
-Arguments: {{.ArgsUsage}}
-{{end}}`

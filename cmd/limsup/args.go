@@ -2,7 +2,9 @@ package main
 
 import (
 	"slices"
+	"strconv"
 	"strings"
+	"unicode"
 
 	"github.com/urfave/cli/v2"
 )
@@ -11,59 +13,91 @@ import (
 // flags, other arguments. The parser itself stops at the first argument that is
 // not a flag and would pass over, in silence, every flag after it.
 
-// arrange reorders args (without the program's name). It needs to know which
-// flags take no value.
+// commandLine is a command line taken apart.
+type commandLine struct {
+	command       string   // "" without one
+	flags         []string // with their values
+	rest          []string // other arguments
+	help, version bool     // asked for, and not among the flags
+}
+
+// parse takes args (without the program's name) apart. It needs to know which
+// flags take no value. The result is usable with an error, too: help may have been
+// asked for.
 //
 // Errors: *usageError for a flag whose value is missing.
-func arrange(app *cli.App, args []string) ([]string, error) {
-	switches := map[string]bool{"help": true, "h": true, "version": true, "v": true}
-	collect := func(flags []cli.Flag) {
-		for _, f := range flags {
-			if _, ok := f.(*cli.BoolFlag); ok {
-				for _, name := range f.Names() {
-					switches[name] = true
-				}
-			}
-		}
-	}
-	collect(app.Flags)
-	for _, c := range app.Commands {
-		collect(c.Flags)
-	}
-	var flags, others []string
+func parse(app *cli.App, args []string) (*commandLine, error) {
+	switches := switchNames(app)
+	line := &commandLine{}
+	var failed error
+	var others []string
 	for i := 0; i < len(args); i++ {
 		a := args[i]
 		switch {
 		case a == "--":
 			others = append(others, args[i+1:]...)
 			i = len(args)
+		case a == "--help" || a == "-help" || a == "-h":
+			line.help = true
+		case a == "--version" || a == "-version":
+			line.version = true
 		case len(a) > 1 && a[0] == '-':
-			flags = append(flags, a)
+			line.flags = append(line.flags, a)
 			name, _, valued := strings.Cut(strings.TrimLeft(a, "-"), "=")
 			if valued || switches[name] {
 				continue
 			}
 			if i+1 == len(args) || isFlag(args[i+1]) {
-				if known(app, name) {
-					return nil, &usageError{"flag --" + name + " needs a value"}
+				if failed == nil && known(app, name) {
+					failed = &usageError{"flag --" + name + " needs a value"}
 				}
 				continue
 			}
 			i++
-			flags = append(flags, args[i])
+			line.flags = append(line.flags, args[i])
 		default:
 			others = append(others, a)
 		}
 	}
-	var out []string
 	if len(others) > 0 {
-		out, others = append(out, others[0]), others[1:]
+		line.command, line.rest = others[0], others[1:]
 	}
-	out = append(out, flags...)
-	if len(others) > 0 {
-		out = append(append(out, "--"), others...)
+	return line, failed
+}
+
+// ordered is the command line as the parser wants it.
+func (l *commandLine) ordered() []string {
+	out := append([]string{l.command}, l.flags...)
+	if len(l.rest) > 0 {
+		out = append(append(out, "--"), l.rest...)
 	}
-	return out, nil
+	return out
+}
+
+// arrange reorders args (without the program's name).
+//
+// Errors: *usageError for a flag whose value is missing.
+func arrange(app *cli.App, args []string) ([]string, error) {
+	line, err := parse(app, args)
+	if err != nil {
+		return nil, err
+	}
+	return line.ordered(), nil
+}
+
+// switchNames are the flags that take no value.
+func switchNames(app *cli.App) map[string]bool {
+	out := map[string]bool{}
+	for _, c := range app.Commands {
+		for _, f := range c.Flags {
+			if _, ok := f.(*cli.BoolFlag); ok {
+				for _, name := range f.Names() {
+					out[name] = true
+				}
+			}
+		}
+	}
+	return out
 }
 
 // isFlag tells a flag from a value such as -3 MPa.
@@ -73,13 +107,16 @@ func isFlag(a string) bool {
 
 // known tells whether any command has the flag.
 func known(app *cli.App, name string) bool {
-	has := func(flags []cli.Flag) bool {
-		for _, f := range flags {
-			if slices.Contains(f.Names(), name) {
-				return true
-			}
-		}
-		return false
+	return slices.ContainsFunc(app.Commands, func(c *cli.Command) bool {
+		return slices.ContainsFunc(c.Flags, func(f cli.Flag) bool { return slices.Contains(f.Names(), name) })
+	})
+}
+
+// shown is text of the user as a message may carry it: quoted if it could upset a
+// terminal.
+func shown(s string) string {
+	if strings.IndexFunc(s, func(r rune) bool { return !unicode.IsPrint(r) }) >= 0 {
+		return strconv.Quote(s)
 	}
-	return has(app.Flags) || slices.ContainsFunc(app.Commands, func(c *cli.Command) bool { return has(c.Flags) })
+	return s
 }

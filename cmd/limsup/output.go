@@ -49,6 +49,15 @@ func show(c *cli.Context, p *product) error {
 	return print(c, p)
 }
 
+// writeText writes text to --out, or to standard output.
+func writeText(c *cli.Context, text string) error {
+	fill := func(w io.Writer) error { _, err := io.WriteString(w, text); return err }
+	if name := c.String("out"); name != "" {
+		return atomicfile.Write(name, fill)
+	}
+	return fill(c.App.Writer)
+}
+
 // print writes a product to standard output.
 func print(c *cli.Context, p *product) error {
 	w := c.App.Writer
