@@ -294,3 +294,24 @@ func (s *search) batch() (*Batch, error) {
 	}
 	return b, nil
 }
+
+// Next is the best candidate to add to a batch given as counts, or −1 where none has
+// room.
+//
+// Errors: *InputError; *SingularError where the batch and the prior do not
+// determine the parameters.
+func (q *Problem) Next(count []int) (int, error) {
+	r, err := q.prepare()
+	if err != nil {
+		return -1, err
+	}
+	if len(count) != len(r.f) {
+		return -1, &InputError{"batch", fmt.Sprintf("%d counts", len(r.f))}
+	}
+	s, ok := newState(r.kind, r.a, r.information(r.prior, count))
+	if !ok {
+		return -1, &SingularError{Parameters: r.p}
+	}
+	at, _ := r.best(s, count)
+	return at, nil
+}
