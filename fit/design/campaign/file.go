@@ -146,8 +146,9 @@ func ReadGrid(r io.Reader, name string) (Grid, error) {
 	if len(data) > maxFile {
 		return Grid{}, FileErrors{{File: name, Message: fmt.Sprintf("more than %d bytes; a file of candidates is a page of text", maxFile)}}
 	}
+	data = bytes.TrimPrefix(data, []byte("\ufeff"))
 	var f gridFile
-	d := toml.NewDecoder(bytes.NewReader(bytes.TrimPrefix(data, []byte("\ufeff"))))
+	d := toml.NewDecoder(bytes.NewReader(data))
 	d.DisallowUnknownFields()
 	if err := d.Decode(&f); err != nil {
 		return Grid{}, tomlErrors(name, data, err)
