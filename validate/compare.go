@@ -4,7 +4,6 @@ import (
 	"context"
 	"fmt"
 	"math"
-	"slices"
 	"sync"
 
 	"limsup/data/fluid"
@@ -110,21 +109,8 @@ type member struct {
 // Errors: *fit.OptionError for settings, or data without common rows;
 // *fluid.UnknownError.
 func Compare(ctx context.Context, set *measure.Set, lib *fluid.Library, o CompareOptions) (*Comparison, error) {
-	if !(o.Keep >= 0 && o.Keep <= 1) {
-		return nil, &fit.OptionError{Option: "keep", Value: fmt.Sprintf("%.10g", o.Keep), Want: "a share from 0 to 1"}
-	}
-	if o.Candidates == nil {
-		o.Candidates = DefaultCandidates()
-	}
-	c := &Comparison{Warnings: set.Warnings, Files: set.Files}
-	members, err := c.common(set, lib, o)
+	c, members, err := begin(set, lib, &o)
 	if err != nil {
-		return nil, err
-	}
-	if o.Folds == "" {
-		o.Folds = DefaultFolds(c.Observations)
-	}
-	if c.Folds, err = NewFolds(o.Folds, c.Observations, o.Seed); err != nil {
 		return nil, err
 	}
 	c.evaluate(ctx, members, o)
@@ -136,6 +122,29 @@ func Compare(ctx context.Context, set *measure.Set, lib *fluid.Library, o Compar
 	}
 	c.rank()
 	return c, nil
+}
+
+// begin does all that comes before tuning: it completes the options and finds the
+// members, their common rows and the folds.
+func begin(set *measure.Set, lib *fluid.Library, o *CompareOptions) (*Comparison, []member, error) {
+	if !(o.Keep >= 0 && o.Keep <= 1) {
+		return nil, nil, &fit.OptionError{Option: "keep", Value: fmt.Sprintf("%.10g", o.Keep), Want: "a share from 0 to 1"}
+	}
+	if o.Candidates == nil {
+		o.Candidates = DefaultCandidates()
+	}
+	c := &Comparison{Warnings: set.Warnings, Files: set.Files}
+	members, err := c.common(set, lib, *o)
+	if err != nil {
+		return nil, nil, err
+	}
+	if o.Folds == "" {
+		o.Folds = DefaultFolds(c.Observations)
+	}
+	if c.Folds, err = NewFolds(o.Folds, c.Observations, o.Seed); err != nil {
+		return nil, nil, err
+	}
+	return c, members, nil
 }
 
 // rowPlace identifies a row of the measurements.
@@ -207,19 +216,18 @@ func firstAside(a []Aside) string {
 // reason that the first candidate without it gives.
 func (c *Comparison) exclude(set *measure.Set, kept []member, shared func(*measure.Row) bool) {
 	c.Excluded = append(c.Excluded, set.Excluded...)
-	for i := range set.Rows {
-		r := &set.Rows[i]
-		if shared(r) {
-			continue
-		}
-		for _, m := range kept {
-			j := slices.IndexFunc(m.data.Excluded, func(x measure.Exclusion) bool {
-				return rowPlace{x.File, x.Where, x.Line} == placeOf(r)
-			})
-			if j >= 0 {
-				c.Excluded = append(c.Excluded, m.data.Excluded[j])
-				break
+	reason := map[rowPlace]measure.Exclusion{}
+	for _, m := range kept {
+		for _, x := range m.data.Excluded {
+			at := rowPlace{x.File, x.Where, x.Line}
+			if _, ok := reason[at]; !ok {
+				reason[at] = x
 			}
+		}
+	}
+	for i := range set.Rows {
+		if r := &set.Rows[i]; !shared(r) {
+			c.Excluded = append(c.Excluded, reason[placeOf(r)])
 		}
 	}
 }
@@ -257,7 +265,10 @@ func (c *Comparison) evaluate(ctx context.Context, members []member, o CompareOp
 		}
 	}
 	if o.Nested {
-		c.nested(ctx, nested, work.tick)
+		c.nested(ctx, nested, func(m, j, k int, inner [][]float64) error {
+			defer work.tick()
+			return c.leaveTwoOut(&nested[m], c.Entries[m].Calibration, j, k, inner)
+		})
 	}
 }
 
@@ -280,17 +291,28 @@ func (p *progress) tick() {
 
 // entry tunes and cross-validates one member.
 func (c *Comparison) entry(ctx context.Context, m *member, tick func()) (*Entry, error) {
-	cal, err := fit.Calibrate(m.data, m.Plan, fit.Options{Workers: 1})
+	cal, err := m.calibrate()
 	tick()
 	if err != nil {
 		return nil, err
 	}
-	e := &Entry{Name: m.name, Kind: KindTuned, Note: m.note, UntunedName: m.untuned, Plan: m.Plan, Calibration: cal, RMSE: cal.RMSE, K: parameters(cal) + 1}
+	cv, err := crossValidate(ctx, m.data, m.Plan, c.Folds, cal, tick)
+	if err != nil {
+		return nil, err
+	}
+	return c.judge(m, cal, cv), nil
+}
+
+// calibrate tunes a member to all common rows.
+func (m *member) calibrate() (*fit.Calibration, error) {
+	return fit.Calibrate(m.data, m.Plan, fit.Options{Workers: 1})
+}
+
+// judge makes an entry of a member that was tuned to all rows and without each fold.
+func (c *Comparison) judge(m *member, cal *fit.Calibration, cv *CrossValidation) *Entry {
+	e := &Entry{Name: m.name, Kind: KindTuned, Note: m.note, UntunedName: m.untuned, Plan: m.Plan, Calibration: cal, RMSE: cal.RMSE, K: parameters(cal) + 1, CV: cv}
 	if m.UntunedOnly {
 		e.Kind = KindUntuned
-	}
-	if e.CV, err = crossValidate(ctx, m.data, m.Plan, c.Folds, cal, tick); err != nil {
-		return nil, err
 	}
 	e.left, _ = e.CV.scores()
 	var rows []reading
@@ -305,7 +327,7 @@ func (c *Comparison) entry(ctx context.Context, m *member, tick func()) (*Entry,
 	e.weigh(rows)
 	e.Coverage = coverage(unseen)
 	e.findWorst(c.Observations, func(i int) (float64, bool) { return e.CV.Rows[i].Tuned, e.CV.Rows[i].Boiled })
-	return e, nil
+	return e
 }
 
 // weigh computes the information criteria.

@@ -32,7 +32,8 @@ type Choice struct {
 // nested fills c.Nested from the finished entries and their members. An inner fold j
 // within the outer fold k needs the model tuned without both, which serves k within j
 // as well. Entries without tuned parameters predict the same whatever is left out.
-func (c *Comparison) nested(ctx context.Context, members []member, tick func()) {
+// twoOut stores the residuals of both folds, by member m tuned without them.
+func (c *Comparison) nested(ctx context.Context, members []member, twoOut func(m, j, k int, inner [][]float64) error) {
 	folds := len(c.Folds.Names)
 	if folds < 3 {
 		c.NestedReason = "an outer loop needs three or more folds"
@@ -67,8 +68,7 @@ func (c *Comparison) nested(ctx context.Context, members []member, tick func()) 
 			return
 		}
 		b := jobs[n]
-		failed[n] = c.leaveTwoOut(&members[b.member], c.Entries[b.member].Calibration, b.j, b.k, inner[b.member]) != nil
-		tick()
+		failed[n] = twoOut(b.member, b.j, b.k, inner[b.member]) != nil
 	})
 	if ctx.Err() != nil {
 		c.NestedReason = "the outer loop was interrupted"
