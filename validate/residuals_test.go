@@ -241,3 +241,31 @@ func TestPlanOfStartsWhereTheModelIs(t *testing.T) {
 		t.Errorf("%d rows with the model's threshold, %d at the start; want 35 and 31", with, without)
 	}
 }
+
+// Whether model or reading is in doubt depends on the other rows of the fluid: all on the
+// same side and at least half as far speak against the model.
+func TestCompanyOfTheWorstRow(t *testing.T) {
+	rec, err := library(t).Find("water")
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, tt := range []struct {
+		residuals []float64 // K; the first is explained
+		says      string
+	}{
+		{[]float64{-30}, "the only row of water"},
+		{[]float64{-30, -20, -14}, "the model rather than the reading is in doubt"},
+		{[]float64{-30, -20, -8}, "look at this reading first"},
+		{[]float64{-30, -40, 5}, "look at this reading first"},
+		{[]float64{30, 20, 14}, "30.00 K above the prediction"},
+	} {
+		a := &Assessment{Data: &fit.Data{}}
+		for i, e := range tt.residuals {
+			a.Rows = append(a.Rows, Residual{Index: i, Residual: e})
+			a.Data.Observations = append(a.Data.Observations, fit.Observation{Row: measure.Row{File: "a.csv", Line: i + 2, Temperature: 550, Pressure: 101325}, Record: rec})
+		}
+		if got := a.explain(0); !strings.Contains(got, tt.says) {
+			t.Errorf("%v: %q does not say %q", tt.residuals, got, tt.says)
+		}
+	}
+}
