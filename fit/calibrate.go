@@ -32,6 +32,8 @@ type Estimate struct {
 	HasU    bool
 	Reason  string
 	AtBound string // "lower", "upper", or ""
+	// Degrees of freedom of U², by Satterthwaite's formula; 0 where it is not known.
+	Degrees float64
 
 	Start, Lower, Upper float64
 }
@@ -51,7 +53,8 @@ type RowResult struct {
 	Standardised float64 // residual/√variance
 	Leverage     float64 // share of its own reading in its prediction, 0 to 1
 	Log10Flux    float64 // log₁₀J at the predicted limit; 0 for a spinodal
-	Gradient     []float64
+	Gradient     []float64 // ∂Predicted/∂θ for the locations
+	Influence    Influence
 }
 
 // Calibration is the result of tuning a variant to measurements.

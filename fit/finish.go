@@ -1,6 +1,7 @@
 package fit
 
 import (
+	"fmt"
 	"math"
 	"slices"
 
@@ -64,8 +65,11 @@ func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense) error {
 			}
 		}
 	}
-	c.rows(lik, variance)
+	c.satterthwaite(lik, active, covPsi)
+	c.rows(lik, variance, len(active))
 	c.Warnings = append(c.Warnings, c.Identity.Warnings...)
+	c.warnNoise(lik)
+	c.warnInfluence()
 	c.warnEdge(lik)
 	c.warnTension(lik)
 	return nil
@@ -81,25 +85,26 @@ func (c *Calibration) estimate(f *Free, x float64) Estimate {
 }
 
 // rows fills residuals, leverages and their summaries.
-func (c *Calibration) rows(lik *likelihood, variance []float64) {
-	p := len(c.theta)
+func (c *Calibration) rows(lik *likelihood, variance []float64, active int) {
 	noise := lik.law(c.psi)
+	p := len(c.theta)
+	gradients := make([]float64, p*len(lik.obs)) // one block for all rows
 	c.Rows = make([]RowResult, len(lik.obs))
 	var ss, sum, sd2 float64
 	n := 0
 	for i := range lik.obs {
 		l := &lik.limit[i]
 		r := lik.residual(i)
-		g := make([]float64, p)
-		for a, at := range lik.lay.index[i] {
-			if at >= 0 {
-				g[at] += derivative(&l.d, a)
-			}
-		}
 		d := lik.density(&noise, i, r, variance[i])
 		row := RowResult{Index: i, Predicted: lik.obs[i].Temperature - r, Residual: r, Variance: variance[i],
-			Standardised: r / math.Sqrt(variance[i]), Gradient: g, Log10Flux: l.lnJ / math.Ln10}
-		row.Leverage = math.Min(1, d.irr*quadratic(c.Covariance, g))
+			Standardised: r / math.Sqrt(variance[i]), Log10Flux: l.lnJ / math.Ln10}
+		row.Gradient, gradients = gradients[:p:p], gradients[p:]
+		for a, at := range lik.lay.index[i] {
+			if at >= 0 {
+				row.Gradient[at] += derivative(&l.d, a)
+			}
+		}
+		row.Leverage, row.Influence = c.influence(lik, i, active, d)
 		c.Rows[i] = row
 		s := lik.lay.sdOf(i, c.psi)
 		sd2 += s * s
@@ -127,6 +132,114 @@ func quadratic(c mat.Symmetric, g []float64) float64 {
 		}
 	}
 	return math.Max(0, q)
+}
+
+// satterthwaite fills the degrees of freedom of the variances: ν = 2V²/Var V, with
+// Var V from the covariance of the spreads and the change of V with each of them.
+func (c *Calibration) satterthwaite(lik *likelihood, active []int, covPsi *mat.SymDense) {
+	p, k := len(c.theta), len(c.psi)
+	for i := range k {
+		if e := &c.Parameters[p+i]; e.HasU && e.U > 0 {
+			e.Degrees = math.Min(math.Max(1, e.Value*e.Value/(2*e.U*e.U)), manyDegrees)
+		}
+	}
+	if _, ok := c.Identity.covariance(); !ok {
+		return
+	}
+	slopes := make([][]float64, k) // ∂C_ii/∂ψ_j, by j
+	for j := range k {
+		if covPsi == nil || !c.Parameters[p+j].HasU {
+			continue
+		}
+		h := 1e-3 * c.psi[j]
+		var diag [2][]float64
+		for side, s := range [2]float64{h, -h} {
+			psi := append([]float64(nil), c.psi...)
+			psi[j] += s
+			curv := mat.NewSymDense(max(p, 1), nil)
+			if _, err := lik.terms(c.theta, psi, lik.variances(psi, nil), make([]float64, p), curv); err != nil {
+				return // cannot be: θ was evaluated
+			}
+			diag[side] = inverseDiagonal(curv, active)
+		}
+		if diag[0] == nil || diag[1] == nil {
+			continue
+		}
+		slopes[j] = make([]float64, len(active))
+		for a := range active {
+			slopes[j][a] = (diag[0][a] - diag[1][a]) / (2 * h)
+		}
+	}
+	for a, i := range active {
+		v := 0.0
+		for x := range k {
+			for y := range k {
+				if slopes[x] != nil && slopes[y] != nil {
+					v += slopes[x][a] * slopes[y][a] * covPsi.At(x, y)
+				}
+			}
+		}
+		e := &c.Parameters[i]
+		e.Degrees = manyDegrees
+		if v > 0 {
+			e.Degrees = math.Min(math.Max(1, 2*math.Pow(e.U, 4)/v), manyDegrees)
+		}
+	}
+}
+
+// inverseDiagonal is the diagonal of the inverse of the active block, nil where there
+// is none.
+func inverseDiagonal(h *mat.SymDense, active []int) []float64 {
+	k := len(active)
+	s, scale := mat.NewSymDense(max(k, 1), nil), make([]float64, k)
+	for a, i := range active {
+		scale[a] = math.Sqrt(h.At(i, i))
+	}
+	for a, i := range active {
+		for b := a; b < k; b++ {
+			s.SetSym(a, b, h.At(i, active[b])/(scale[a]*scale[b]))
+		}
+	}
+	var c mat.Cholesky
+	if k == 0 || !c.Factorize(s) {
+		return nil
+	}
+	inv := mat.NewSymDense(k, nil)
+	if err := c.InverseTo(inv); err != nil && !isCondition(err) {
+		return nil
+	}
+	out := make([]float64, k)
+	for a := range out {
+		out[a] = inv.At(a, a) / (scale[a] * scale[a])
+	}
+	return out
+}
+
+// noise is that of the plan with estimated degrees of freedom.
+func (c *Calibration) noise() Noise {
+	n := c.Plan.Noise
+	for i := range c.Parameters {
+		if e := &c.Parameters[i]; e.Name == DegreesOfNoise {
+			n.Degrees = e.Value
+		}
+	}
+	return n
+}
+
+// warnNoise counts the rows of survival noise that have no law of boiling.
+func (c *Calibration) warnNoise(lik *likelihood) {
+	if c.Plan.Noise.Kind != Survival {
+		return
+	}
+	without := 0
+	for _, κ := range lik.steepness {
+		if κ == 0 {
+			without++
+		}
+	}
+	if without > 0 {
+		c.warn(fmt.Sprintf("%d of %d rows have no survival probability of their own (no volume with a heating rate, holding time or lifetime, or the spinodal in place of a limit) and count as gaussian", without, len(lik.steepness)))
+	}
 }
 
 // warnEdge names the fluids whose flux does not reach its target at the estimates,

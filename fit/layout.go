@@ -43,7 +43,7 @@ func (f *Free) Label() string {
 
 // pool ties group values to their shared normal distribution.
 type pool struct {
-	mean   int   // index into θ
+	mean   int   // index into θ, or −1: the mean is zero by definition
 	spread int   // index into ψ
 	values []int // indices into θ
 }
@@ -155,7 +155,10 @@ func (l *layout) place(p *Plan, obs []Observation, name string, set func(o, at i
 	lo, hi := p.bounds(q)
 	names, count := groups(obs, t.By)
 	reference := ""
-	if name == Offset && t.By != Shared {
+	if name == Offset && t.By != Shared && len(names) < 2 {
+		return &OptionError{"tune", t.String(), fmt.Sprintf("data with two or more of its groups; here all rows have %s %q", t.By, names[0])}
+	}
+	if name == Offset && t.By != Shared && !t.Pooled {
 		reference = names[0]
 		for _, g := range names {
 			if count[g] > count[reference] {
@@ -166,9 +169,6 @@ func (l *layout) place(p *Plan, obs []Observation, name string, set func(o, at i
 			reference = r
 		}
 		l.references[string(t.By)] = reference
-		if len(names) < 2 {
-			return &OptionError{"tune", t.String(), fmt.Sprintf("data with two or more of its groups; here all rows have %s %q", t.By, reference)}
-		}
 	}
 	at := map[string]int{}
 	for _, g := range names {
@@ -194,17 +194,21 @@ func (l *layout) place(p *Plan, obs []Observation, name string, set func(o, at i
 	return nil
 }
 
-// addPool adds the mean and the spread of pooled groups.
+// addPool adds the mean and the spread of pooled groups. Offsets are scattered about
+// zero: their mean is the level of all readings, which other parameters hold.
 func (l *layout) addPool(q Parameter, t Term, names []string, at map[string]int, lo, hi, start float64) {
 	k := len(l.pools)
-	pl := pool{mean: len(l.theta), spread: len(l.psi)}
+	pl := pool{mean: -1, spread: len(l.psi)}
 	for _, g := range names {
 		if i := at[g]; i >= 0 {
 			pl.values = append(pl.values, i)
 			l.theta[i].pool = k
 		}
 	}
-	l.theta = append(l.theta, Free{Name: t.Name, By: t.By, Role: RolePoolMean, Unit: q.Unit, Start: start, Lower: lo, Upper: hi, pool: k})
+	if t.Name != Offset {
+		pl.mean = len(l.theta)
+		l.theta = append(l.theta, Free{Name: t.Name, By: t.By, Role: RolePoolMean, Unit: q.Unit, Start: start, Lower: lo, Upper: hi, pool: k})
+	}
 	width := hi - lo
 	l.psi = append(l.psi, Free{Name: t.Name, By: t.By, Role: RolePoolSpread, Unit: q.Unit, Start: 0.05 * width, Lower: 1e-6 * width, Upper: width, pool: k})
 	l.pools = append(l.pools, pl)
@@ -324,7 +328,7 @@ func (l *layout) touched(obs []Observation) []bool {
 		}
 	}
 	for _, p := range l.pools {
-		if slices.ContainsFunc(p.values, func(i int) bool { return t[i] }) {
+		if p.mean >= 0 && slices.ContainsFunc(p.values, func(i int) bool { return t[i] }) {
 			t[p.mean] = true
 		}
 	}

@@ -7,7 +7,6 @@ import (
 	"sort"
 
 	"gonum.org/v1/gonum/mat"
-	"gonum.org/v1/gonum/stat/distuv"
 
 	"limsup/data/fluid"
 	"limsup/eos/nucleation"
@@ -53,7 +52,7 @@ func Untuned(v Variant, settings ...Setting) (*Model, error) {
 // Model is the calibrated model.
 func (c *Calibration) Model() *Model {
 	m := &Model{Variant: c.Plan.Variant, Settings: c.Plan.Fixed, Parameters: c.Parameters, Covariance: c.Covariance, Degrees: c.Degrees,
-		Noise: c.Plan.Noise, References: c.References, Calibrated: true}
+		Noise: c.noise(), References: c.References, Calibrated: true}
 	m.Validity = validity(c.Data.Observations)
 	if err := m.Prepare(); err != nil {
 		panic("fit: plan of a calibration no longer completes: " + err.Error()) // it did when the calibration began
@@ -103,9 +102,10 @@ type Query struct {
 	// Method and Batch choose values that a model has by method or batch. "" is the
 	// reference method, whose offset is zero.
 	Method, Batch string
-	// Target, if OwnFlux, replaces the threshold.
+	// Target, if OwnFlux, replaces the threshold. Hazard is as in Observation.
 	Target  nucleation.Target
 	OwnFlux bool
+	Hazard  float64
 	// OrSpinodal lets the spinodal stand in where the flux does not reach its target
 	// before it, instead of an error; the prediction says so.
 	OrSpinodal bool
@@ -125,8 +125,14 @@ type Prediction struct {
 	U, UPressure float64 // K, Pa
 	HasU         bool
 	Low, High    float64 // 95 % interval of the quantity asked for, K or Pa
-	Log10Flux    float64 // at the limit; 0 with HasFlux false for a spinodal
-	HasFlux      bool
+	// ULimit is the standard uncertainty of the limit itself in K, without the scatter
+	// of readings, and LimitLow to LimitHigh its 95 % interval.
+	ULimit              float64
+	LimitLow, LimitHigh float64
+	// Degrees of freedom of U².
+	Degrees   float64
+	Log10Flux float64 // at the limit; 0 with HasFlux false for a spinodal
+	HasFlux   bool
 	// SpinodalT and SaturationT are on the same equation at the same pressure; the
 	// flags say whether they exist there.
 	SpinodalT, SaturationT float64
@@ -149,7 +155,7 @@ type lookup struct {
 func (m *Model) lookup(name string, q *Query) lookup {
 	found := lookup{at: -1}
 	tuned := false
-	var mean, spread = -1, 0.0
+	mean, pooled, spread := -1, false, 0.0
 	for i := range m.Parameters {
 		e := &m.Parameters[i]
 		if e.Name != name {
@@ -160,7 +166,7 @@ func (m *Model) lookup(name string, q *Query) lookup {
 		case RolePoolMean:
 			mean = i
 		case RolePoolSpread:
-			spread = e.Value
+			pooled, spread = true, e.Value
 		default:
 			if e.Group == m.groupFor(e.By, q) {
 				return lookup{at: i, value: e.Value}
@@ -169,6 +175,10 @@ func (m *Model) lookup(name string, q *Query) lookup {
 	}
 	if mean >= 0 {
 		return lookup{at: mean, value: m.Parameters[mean].Value, variance: spread * spread, foreign: true}
+	}
+	if pooled { // offsets scattered about zero
+		by := m.Parameters[slices.IndexFunc(m.Parameters, func(e Estimate) bool { return e.Name == name })].By
+		return lookup{at: -1, variance: spread * spread, foreign: m.groupFor(by, q) != ""}
 	}
 	p, err := parameterOf(name, &m.Variant)
 	if err == nil {
@@ -315,65 +325,11 @@ func (ph *Physics) saturationTemperature(P float64) (float64, bool) {
 	return s.T, err == nil
 }
 
-// uncertainty combines g'Cg with the spread.
-func (m *Model) uncertainty(out *Prediction, q *Query, l *limitValue, found *[locations]lookup) {
-	if !m.Calibrated || m.Covariance == nil {
-		return
-	}
-	g := make([]float64, len(m.Parameters))
-	extra, complete := 0.0, true
-	for i, f := range found {
-		d := derivative(&l.d, i)
-		if f.at >= 0 {
-			g[f.at] += d
-			e := &m.Parameters[f.at]
-			if !e.HasU && d != 0 && e.AtBound == "" {
-				complete = false
-			}
-		}
-		extra += d * d * f.variance
-	}
-	if !complete {
-		out.Warnings = append(out.Warnings, "no uncertainty: the calibration has none for a parameter that the limit depends on")
-		return
-	}
-	s := m.spread(q)
-	if m.Noise.Kind == Student && m.Noise.Degrees > 2 {
-		s *= math.Sqrt(m.Noise.Degrees / (m.Noise.Degrees - 2))
-	}
-	out.U = math.Sqrt(quadratic(m.Covariance, g) + extra + s*s)
-	out.UPressure = math.Abs(out.U / l.dTdP)
-	out.HasU = true
-	t := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: float64(m.Degrees)}.Quantile(0.975)
-	if q.AtTemperature {
-		out.Low, out.High = out.Pressure-t*out.UPressure, out.Pressure+t*out.UPressure
-	} else {
-		out.Low, out.High = out.Temperature-t*out.U, out.Temperature+t*out.U
-	}
-}
-
 // spread is the standard deviation of a reading of the query beyond stated
-// uncertainties: that of its group or, for a group that was not measured, the
-// largest.
+// uncertainties.
 func (m *Model) spread(q *Query) float64 {
-	worst, tuned := 0.0, false
-	for i := range m.Parameters {
-		e := &m.Parameters[i]
-		if e.Name != Spread {
-			continue
-		}
-		if e.Group == m.groupFor(e.By, q) {
-			return e.Value
-		}
-		worst, tuned = math.Max(worst, e.Value), true
-	}
-	if !tuned {
-		p, err := parameterOf(Spread, &m.Variant)
-		if err == nil {
-			return m.settings.value(p, "")
-		}
-	}
-	return worst
+	s, _ := m.spreadOf(q)
+	return s
 }
 
 // compareRange compares a prediction with the data behind the model.

@@ -154,7 +154,11 @@ func (l *likelihood) addPenalties(theta, psi []float64, grad []float64, curv *ma
 	}
 	for _, p := range l.lay.pools {
 		for _, g := range p.values {
-			normal(theta[g]-theta[p.mean], psi[p.spread], g, p.mean)
+			x := theta[g]
+			if p.mean >= 0 {
+				x -= theta[p.mean]
+			}
+			normal(x, psi[p.spread], g, p.mean)
 		}
 	}
 	for _, p := range l.lay.priors {

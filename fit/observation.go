@@ -278,7 +278,7 @@ func (ph *Physics) limit(P float64, t nucleation.Target, own bool, guess float64
 
 // Query asks a model for the limit of the observation.
 func (o *Observation) Query() Query {
-	return Query{Record: o.Record, Pressure: o.Pressure, Method: o.Method, Batch: o.Batch, Target: o.Target, OwnFlux: o.OwnFlux, OrSpinodal: true}
+	return Query{Record: o.Record, Pressure: o.Pressure, Method: o.Method, Batch: o.Batch, Target: o.Target, OwnFlux: o.OwnFlux, Hazard: o.Hazard, OrSpinodal: true}
 }
 
 // Limit is the limit at P in Pa at the model's threshold.

@@ -92,7 +92,7 @@ func (f *File) calibration(m *fit.Model, meta *Meta) {
 	for i := range m.Parameters {
 		e := &m.Parameters[i]
 		p := Parameter{Name: e.Name, By: string(e.By), Group: e.Group, Role: string(e.Role), Value: e.Value, Unit: e.Unit,
-			Reason: e.Reason, AtBound: e.AtBound, Lower: e.Lower, Upper: e.Upper, Start: e.Start}
+			Degrees: e.Degrees, Reason: e.Reason, AtBound: e.AtBound, Lower: e.Lower, Upper: e.Upper, Start: e.Start}
 		switch u := e.U; {
 		case e.HasU:
 			p.U = &u

@@ -168,7 +168,10 @@ func (c *checker) family(i int, first map[string]int) {
 	if role == fit.RolePoolSpread {
 		partner = fit.RolePoolMean
 	}
-	if !slices.ContainsFunc(c.file.Parameters[first[p.Name]:], func(q Parameter) bool { return q.Name == p.Name && q.Role == string(partner) }) {
+	if role == fit.RolePoolSpread && p.Name == fit.Offset {
+		partner = "" // offsets are scattered about zero
+	}
+	if partner != "" && !slices.ContainsFunc(c.file.Parameters[first[p.Name]:], func(q Parameter) bool { return q.Name == p.Name && q.Role == string(partner) }) {
 		c.at(nil, fmt.Sprintf("found a %s without a %s of %s, expected both", p.Role, partner, p.Name), "parameters", i, "role")
 	}
 	if role == fit.RolePoolSpread && p.Value < 0 {
@@ -181,6 +184,8 @@ func (c *checker) family(i int, first map[string]int) {
 func (c *checker) references(first map[string]int) {
 	references := c.file.references()
 	at, tuned := first[fit.Offset]
+	// Pooled offsets are scattered about zero; none of them need be the reference.
+	pooled := slices.ContainsFunc(c.file.Parameters, func(p Parameter) bool { return p.Name == fit.Offset && p.Role == string(fit.RolePoolSpread) })
 	by := ""
 	if tuned {
 		by = c.file.Parameters[at].By
@@ -191,8 +196,9 @@ func (c *checker) references(first map[string]int) {
 		switch {
 		case ok && !wanted:
 			c.at(nil, foundExpected(strconv.Quote(g), "no reference "+string(scope)+" without an offset by "+string(scope)), "offset_references", string(scope))
-		case wanted && !ok:
+		case wanted && !ok && !pooled:
 			c.at(nil, foundExpected("nothing", "the "+by+" whose offset is zero"), "offset_references", by)
+		case wanted && !ok:
 		case wanted && scope == fit.ByMethod && c.file.Validity != nil && !slices.Contains(c.file.Validity.Methods, g):
 			c.at(nil, foundExpected(strconv.Quote(g), "a method of /validity/methods"), "offset_references", by)
 		case wanted && scope == fit.ByFluid && !c.hasFluid(g):

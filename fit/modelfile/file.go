@@ -91,8 +91,9 @@ type Parameter struct {
 	Group   string   `json:"group,omitzero"` // absent for a shared one and for the mean and the spread of a pool
 	Role    string   `json:"role"`
 	Value   float64  `json:"value"`
-	Unit    string   `json:"unit"`                 // UCUM
-	U       *float64 `json:"standard_uncertainty"` // null where there is none, for the reason
+	Unit    string   `json:"unit"`                        // UCUM
+	U       *float64 `json:"standard_uncertainty"`        // null where there is none, for the reason
+	Degrees float64  `json:"degrees_of_freedom,omitzero"` // of the square of U; may be absent
 	Reason  string   `json:"reason,omitzero"`
 	AtBound string   `json:"at_bound,omitzero"` // "lower" or "upper"
 	Lower   float64  `json:"lower"`

@@ -77,7 +77,7 @@ func (f *File) references() map[string]string {
 
 func (p *Parameter) estimate() fit.Estimate {
 	e := fit.Estimate{Name: p.Name, By: fit.By(p.By), Group: p.Group, Role: fit.Role(p.Role), Unit: p.Unit, Value: p.Value,
-		Reason: p.Reason, AtBound: p.AtBound, Start: p.Start, Lower: p.Lower, Upper: p.Upper}
+		Degrees: p.Degrees, Reason: p.Reason, AtBound: p.AtBound, Start: p.Start, Lower: p.Lower, Upper: p.Upper}
 	if p.U != nil {
 		e.U, e.HasU = *p.U, true
 	}
