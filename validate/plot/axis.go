@@ -74,10 +74,10 @@ func scale(a *Axis, values []float64) Scale {
 	return linearScale(lo, hi)
 }
 
-// linearScale puts four to eight ticks at multiples of 1, 2 or 5 times a power of ten.
+// linearScale puts three to eight ticks at multiples of 1, 2 or 5 times a power of ten.
 func linearScale(lo, hi float64) Scale {
 	s := Scale{Low: lo, High: hi}
-	raw := (hi - lo) / 5
+	raw := (hi - lo) / 7.5 // a step is up to 2.5 times as long, which leaves three ticks
 	power := math.Pow(10, math.Floor(math.Log10(raw)))
 	step := 10 * power
 	for _, k := range []float64{1, 2, 5} {

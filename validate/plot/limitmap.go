@@ -180,7 +180,7 @@ func (in *Input) limitLines(f *Figure, m *eos.Model, low, top float64, note bool
 		case n == 0 && note:
 			f.Notes = append(f.Notes, fmt.Sprintf("There is no %s to draw: %s.", line.Name, why))
 		case why != nil && note:
-			f.Notes = append(f.Notes, fmt.Sprintf("The line \"%s\" is drawn where that limit exists, from %s MPa to %s MPa.", line.Name, significant(line.Y[0], 3), significant(line.Y[n-1], 3)))
+			f.Notes = append(f.Notes, fmt.Sprintf("The line “%s” is drawn where that limit exists, from %s MPa to %s MPa.", line.Name, significant(line.Y[0], 3), significant(line.Y[n-1], 3)))
 		}
 		bands, lines = append(bands, band), append(lines, line)
 	}

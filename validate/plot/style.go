@@ -1,6 +1,9 @@
 package plot
 
-import "image/color"
+import (
+	"image/color"
+	"math"
+)
 
 // This file holds the look of the figures.
 //
@@ -133,4 +136,19 @@ func (s Style) LineWidth() float64 {
 // colour repeats after four, colour and marker together after 28.
 func groupStyle(i int) Style {
 	return Style{Colour: First + Colour(i%4), Marker: Marker(i % int(markers)), Dash: []Dash{Solid, LongDashed, DashDotted, Dashed, Dotted}[i%int(dashes)]}
+}
+
+// Luminance is the relative luminance of a colour of sRGB, 0 for black to 1 for
+// white (IEC 61966-2-1, with the coefficients of ITU-R BT.709; both from memory).
+func Luminance(r, g, b uint8) float64 {
+	return 0.2126*linearLight(r) + 0.7152*linearLight(g) + 0.0722*linearLight(b)
+}
+
+// linearLight undoes the transfer curve of sRGB.
+func linearLight(v uint8) float64 {
+	x := float64(v) / 255
+	if x <= 0.04045 {
+		return x / 12.92
+	}
+	return math.Pow((x+0.055)/1.055, 2.4)
 }

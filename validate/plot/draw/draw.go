@@ -7,9 +7,11 @@
 package draw
 
 import (
+	"bytes"
 	"fmt"
 	"io"
 	"math"
+	"regexp"
 	"strings"
 
 	"gonum.org/v1/plot"
@@ -77,7 +79,7 @@ func Write(w io.Writer, f *figure.Figure, format string) error {
 		page.SetColor(white)
 		page.Fill(page.Rectangle.Path())
 	}
-	page.FillText(textStyle(11, true), vg.Point{X: pad, Y: height - titleLine + 4}, f.Title)
+	page.FillText(textStyle(11), vg.Point{X: pad, Y: height - titleLine + 4}, f.Title)
 	for i := range f.Panels {
 		x, y := vg.Length(i%columns)*panelWidth, height-titleLine-vg.Length(i/columns+1)*panelHeight
 		box := vgdraw.Canvas{Canvas: c, Rectangle: vg.Rectangle{Min: vg.Point{X: x + pad, Y: y + pad}, Max: vg.Point{X: x + panelWidth - pad, Y: y + panelHeight - pad}}}
@@ -88,7 +90,24 @@ func Write(w io.Writer, f *figure.Figure, format string) error {
 		y := height - titleLine - bodyHeight - legendLine*vg.Length(i/perRow+1) + 4
 		drawEntry(page, &legend[i], x, y)
 	}
+	if format == "pdf" {
+		return writeUndated(w, c)
+	}
 	_, err = c.WriteTo(w)
+	return err
+}
+
+// dates are those that the writer of PDF takes from the clock.
+var dates = regexp.MustCompile(`(/(?:CreationDate|ModDate) \(D:)\d{14}\)`)
+
+// writeUndated writes a PDF whose dates are a constant of the same length, so that
+// the places of its objects stay what its index says.
+func writeUndated(w io.Writer, c io.WriterTo) error {
+	var b bytes.Buffer
+	if _, err := c.WriteTo(&b); err != nil {
+		return err
+	}
+	_, err := w.Write(dates.ReplaceAll(b.Bytes(), []byte("${1}20000101000000)")))
 	return err
 }
 
@@ -104,21 +123,22 @@ func newCanvas(format string, w, h vg.Length) (canvas, error) {
 	return nil, &FormatError{format}
 }
 
-func textStyle(size vg.Length, bold bool) vgdraw.TextStyle {
+func textStyle(size vg.Length) vgdraw.TextStyle {
 	f := font.Font{Typeface: "Liberation", Variant: "Sans", Size: size}
-	if bold {
-		f.Weight = 3 // bold in the scale of golang.org/x/image/font
-	}
 	return vgdraw.TextStyle{Color: figure.Ink.Of().Light, Font: f, Handler: plot.DefaultTextHandler}
 }
 
 // panel turns a panel into a plot.
 func panel(p *figure.Panel) *plot.Plot {
 	x, y := p.Scales()
+	longest := 26
+	if p.Matrix != nil {
+		longest = 36
+	}
 	g := plot.New()
 	g.BackgroundColor = nil
 	g.Title.Text = p.Title
-	g.Title.TextStyle = aligned(textStyle(9, false), g.Title.TextStyle)
+	g.Title.TextStyle = aligned(textStyle(9), g.Title.TextStyle)
 	g.Title.Padding = 3
 	for _, a := range []struct {
 		axis  *plot.Axis
@@ -129,13 +149,13 @@ func panel(p *figure.Panel) *plot.Plot {
 		if a.scale.Log {
 			a.axis.Scale = plot.LogScale{}
 		}
-		a.axis.Tick.Marker = plot.ConstantTicks(ticks(a.scale, len(a.from.Categories) > 0))
-		a.axis.Tick.Label = aligned(textStyle(8.5, false), a.axis.Tick.Label)
+		a.axis.Tick.Marker = plot.ConstantTicks(ticks(a.scale, len(a.from.Categories) > 0, longest))
+		a.axis.Tick.Label = aligned(textStyle(8.5), a.axis.Tick.Label)
 		a.axis.Tick.Length = 3
 		a.axis.Tick.LineStyle = lineStyle(figure.Style{Colour: figure.Ink, Width: 0.6})
 		a.axis.LineStyle = lineStyle(figure.Style{Colour: figure.Ink, Width: 0.6})
 		a.axis.Label.Text = a.from.Label
-		a.axis.Label.TextStyle = aligned(textStyle(9, false), a.axis.Label.TextStyle)
+		a.axis.Label.TextStyle = aligned(textStyle(9), a.axis.Label.TextStyle)
 		a.axis.Padding = 2
 	}
 	if p.Matrix != nil {
@@ -159,19 +179,19 @@ func aligned(s, place vgdraw.TextStyle) vgdraw.TextStyle {
 	return s
 }
 
-func ticks(s *figure.Scale, names bool) []plot.Tick {
+// ticks are those of a scale; names are cut to most characters.
+func ticks(s *figure.Scale, names bool, most int) []plot.Tick {
 	out := make([]plot.Tick, len(s.Ticks))
 	for i, t := range s.Ticks {
 		if names {
-			t.Label = shorten(t.Label)
+			t.Label = shorten(t.Label, most)
 		}
 		out[i] = plot.Tick{Value: t.Value, Label: t.Label}
 	}
 	return out
 }
 
-func shorten(s string) string {
-	const most = 26
+func shorten(s string, most int) string {
 	if r := []rune(s); len(r) > most {
 		return string(r[:most-1]) + "…"
 	}

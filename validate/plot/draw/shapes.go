@@ -130,7 +130,7 @@ type cells struct{ *figure.Matrix }
 // Plot implements plot.Plotter.
 func (m *cells) Plot(c vgdraw.Canvas, p *plot.Plot) {
 	tx, ty := p.Transforms(&c)
-	style := textStyle(7.5, false)
+	style := textStyle(7.5)
 	style.XAlign, style.YAlign = vgdraw.XCenter, vgdraw.YCenter
 	for r, row := range m.Value {
 		for k, v := range row {
@@ -160,5 +160,5 @@ func drawEntry(c vgdraw.Canvas, s *figure.Series, x, y vg.Length) {
 	default:
 		c.StrokeLine2(lineStyle(s.Style), x, middle, x+width, middle)
 	}
-	c.FillText(textStyle(8.5, false), vg.Point{X: x + width + gap, Y: y}, s.Name)
+	c.FillText(textStyle(8.5), vg.Point{X: x + width + gap, Y: y}, s.Name)
 }

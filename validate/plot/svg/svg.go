@@ -17,7 +17,6 @@ import (
 	"image/color"
 	"strconv"
 	"strings"
-	"unicode/utf8"
 
 	"limsup/validate/plot"
 )
@@ -30,6 +29,7 @@ const (
 	left, right, top, bottom = 50.0, 12.0, 30.0, 42.0
 	fontSize                 = 12.0
 	markerSize               = 3.6
+	boldness                 = 1.12 // how much wider bold letters are
 )
 
 // frame maps axis values to places in the view box.
@@ -61,15 +61,15 @@ func Panel(f *plot.Figure, i int) (string, error) {
 	height := Height
 	w.x0, w.x1, w.y0, w.y1 = left, Width-right, Height-bottom, top
 	if len(p.Y.Categories) > 0 {
-		longest := 0
+		longest := 0.0
 		for _, c := range p.Y.Categories {
-			longest = max(longest, utf8.RuneCountInString(c))
+			longest = max(longest, textWidth(c))
 		}
 		widest := 170.0
 		if p.Matrix != nil {
 			widest = 200
 		}
-		w.x0 = min(widest, max(left, 14+6.6*float64(longest)))
+		w.x0 = min(widest, max(left, 14+longest))
 	}
 	if n := len(p.Y.Categories); p.Matrix != nil && n > 0 {
 		side := (w.x1 - w.x0) / float64(n)
@@ -202,24 +202,15 @@ func (w *writer) axes(p *plot.Panel) {
 			fmt.Fprintf(&ticks, "M%s %sh-%s", num(w.x0), num(y), num(length))
 		}
 		if t.Label != "" {
-			w.printf(`<text class="tick" x="%s" y="%s" text-anchor="end">%s</text>`, num(w.x0-7), num(y+4), html.EscapeString(shorten(t.Label, int((w.x0-14)/6.6))))
+			w.printf(`<text class="tick" x="%s" y="%s" text-anchor="end">%s</text>`, num(w.x0-7), num(y+4), html.EscapeString(shorten(t.Label, w.x0-10)))
 		}
 	}
 	if p.Matrix == nil {
 		w.printf(`<path class="axis" d="M%s %sH%s M%s %sV%s%s"/>`, num(w.x0), num(w.y0), num(w.x1), num(w.x0), num(w.y0), num(w.y1), ticks.String())
 	}
-	w.printf(`<text class="label" x="%s" y="%s" text-anchor="end">%s</text>`, num(w.x1), num(w.y0+35), html.EscapeString(shorten(p.X.Label, 48)))
-	w.printf(`<text class="label" x="4" y="16">%s</text>`, html.EscapeString(shorten(p.Y.Label, 48)))
+	w.printf(`<text class="label" x="%s" y="%s" text-anchor="end">%s</text>`, num(w.x1), num(w.y0+35), html.EscapeString(shorten(p.X.Label, 1/boldness*w.x1)))
+	w.printf(`<text class="label" x="4" y="16">%s</text>`, html.EscapeString(shorten(p.Y.Label, 1/boldness*(Width-4))))
 	w.WriteString("</g>\n")
-}
-
-// shorten cuts a text to n characters.
-func shorten(s string, n int) string {
-	r := []rune(s)
-	if len(r) <= max(n, 4) {
-		return s
-	}
-	return string(r[:max(n, 4)-1]) + "…"
 }
 
 func (w *writer) series(s *plot.Series) {
@@ -347,8 +338,8 @@ func (w *writer) matrix(p *plot.Panel) {
 			w.printf("<g class=\"cell %s\"><path d=\"M%s %sh%sv%sh-%sZ\" fill-opacity=\"%s\" data-row=\"%d\" data-column=\"%d\" data-value=\"%s\"><title>%s and %s: %s</title></path>",
 				class, num(x+0.5), num(y+0.5), num(side-1), num(side-1), num(side-1), num(strength), r+1, c+1, full(v),
 				html.EscapeString(p.Y.Categories[r]), html.EscapeString(p.X.Categories[c]), text)
-			if side >= 22 {
-				w.printf(`<text x="%s" y="%s" text-anchor="middle" aria-hidden="true">%s</text>`, num(x+side/2), num(y+side/2+4), text)
+			if size := min(11, 0.31*side); size >= 5 {
+				w.printf(`<text x="%s" y="%s" style="font-size:%spx" text-anchor="middle" aria-hidden="true">%s</text>`, num(x+side/2), num(y+side/2+0.35*size), num(size), text)
 			}
 			w.WriteString("</g>\n")
 		}
@@ -405,7 +396,6 @@ func Style() string {
 .points .stroked{fill:none;stroke:currentColor;stroke-width:1.8}
 .points path:hover{stroke:var(--ink);stroke-width:2}
 .cell path{fill:currentColor}
-.cell text{font-size:11px}
 .swatch{width:34px;height:14px;flex:none}
 `)
 	return b.String()
