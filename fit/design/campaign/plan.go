@@ -179,8 +179,11 @@ func (p *Plan) readings() error {
 			continue
 		}
 		r := Reading{Candidate: c, Expected: x.Temperature, U: math.Sqrt(v), Log10J: x.Log10Flux, HasFlux: x.HasFlux, Warnings: x.Warnings, sensitivity: x, variance: v}
-		if n := p.Model.Noise; n.Kind == fit.Student && n.Degrees > 2 {
+		switch n := p.Model.Noise; {
+		case n.Kind == fit.Student && n.Degrees > 2:
 			r.U *= math.Sqrt(n.Degrees / (n.Degrees - 2))
+		case boilsAtRandom(n, &x):
+			r.U = math.Hypot(r.U, math.Pi/math.Sqrt(6)/x.Steepness) // standard deviation of an extreme-value law of scale 1/κ
 		}
 		if rival := p.Target.Rival; rival != nil {
 			y, err := rival.Model.Sensitivity(c.Query())

@@ -62,6 +62,8 @@ type truth struct {
 	expected float64 // K
 	sd       float64 // K
 	intact   bool    // heating stops at the reading of o
+	steep    float64 // 1/K, of a sample that boils at random, with survival noise
+	hazard   float64 // at the limit
 }
 
 // Check carries the plan out Campaigns times. plan is that of the calibration. The
@@ -150,7 +152,14 @@ func (p *Plan) truth(o fit.Observation) (truth, error) {
 	uP := o.UPressure * x.Slope
 	v := float64(o.UTemperature*o.UTemperature) + float64(uP*uP) + float64(x.Spread*x.Spread)
 	o.Start = x.Temperature
-	return truth{o: o, expected: x.Temperature, sd: math.Sqrt(v), intact: o.Outcome == measure.Intact}, nil
+	t := truth{o: o, expected: x.Temperature, sd: math.Sqrt(v), intact: o.Outcome == measure.Intact}
+	if timed := o.Volume > 0 && (o.HeatingRate > 0 || o.HoldingTime > 0 || o.Lifetime > 0); timed && o.Flux == 0 && boilsAtRandom(p.Model.Noise, &x) {
+		t.steep, t.hazard = x.Steepness, math.Ln2 // a median
+		if o.Lifetime > 0 {
+			t.hazard = 1 // a mean waiting time
+		}
+	}
+	return t, nil
 }
 
 // startAtModel lets a calibration start from the values of the model and hold the
@@ -229,7 +238,7 @@ func (p *Plan) campaign(plan fit.Plan, rows []truth, rng *rand.Rand) outcome {
 	for i := range rows {
 		t := &rows[i]
 		x := t.o
-		reading := t.expected + noise.draw(t.sd)
+		reading := t.expected + noise.draw(t.sd) + noise.boil(t.steep, t.hazard)
 		x.Outcome = measure.Boiled
 		if t.intact && reading > t.o.Temperature {
 			reading, x.Outcome = t.o.Temperature, measure.Intact // heating stopped there

@@ -245,7 +245,7 @@ func (s *space) gradient(x *fit.Sensitivity) []float64 {
 // factors are the rows of a reading with variance v: one about its limit and, where
 // its spread is tuned, one about its variance (∂v/∂spread = 2·spread).
 func (s *space) factors(x *fit.Sensitivity, v float64) [][]float64 {
-	irr, ivv := s.model.Noise.Information(v)
+	irr, ivv := s.model.Noise.ReadingInformation(x, v)
 	g := s.gradient(x)
 	for i := range g {
 		g[i] *= math.Sqrt(irr)

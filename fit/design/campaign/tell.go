@@ -59,7 +59,7 @@ func (p *Plan) tellProblem() (*design.Problem, error) {
 	for i := range p.Readings {
 		r := &p.Readings[i]
 		rows := s.factors(&sensitivities[i], r.variance)
-		irr, _ := s.model.Noise.Information(r.variance)
+		irr, _ := s.model.Noise.ReadingInformation(&sensitivities[i], r.variance)
 		c := design.Candidate{Most: r.Most}
 		for k, row := range rows {
 			κ := 0.0
@@ -86,7 +86,8 @@ func (p *Plan) tellBefore(q *design.Problem, s *space) error {
 	// κ is a share: without any measurement it is known to lie about 0 to 1, which
 	// counts as a standard deviation of 1 and keeps the first step well posed.
 	m.SetSym(0, 0, 1)
-	c := p.Target.Rival.Calibration
+	rival := p.Target.Rival
+	c := rival.Calibration
 	if p.Fresh || p.Data == nil || c == nil {
 		return nil
 	}
@@ -101,7 +102,11 @@ func (p *Plan) tellBefore(q *design.Problem, s *space) error {
 			return err
 		}
 		δ := x.Temperature - row.Predicted
-		irr, _ := s.model.Noise.Information(row.Variance)
+		y, err := rival.Model.Sensitivity(o.Query())
+		if err != nil {
+			return err
+		}
+		irr, _ := s.model.Noise.ReadingInformation(&y, row.Variance)
 		m.SetSym(0, 0, m.At(0, 0)+float64(irr*δ*δ))
 		for k, g := range row.Gradient {
 			if at, ok := s.own[k]; ok && g != 0 {

@@ -40,7 +40,7 @@ func (p *Plan) verdict(own *design.Problem) error {
 	if err != nil {
 		return err
 	}
-	var δ, sd []float64
+	var δ, sd, steep []float64
 	var g [][]float64
 	for _, s := range p.Steps {
 		r := &p.Readings[s.Reading]
@@ -51,6 +51,11 @@ func (p *Plan) verdict(own *design.Problem) error {
 			p.Verdict.Reason = "the untuned model does not predict " + r.Subject() + ": " + err.Error()
 			return nil
 		}
+		κ := 0.0
+		if boilsAtRandom(p.Model.Noise, &r.sensitivity) {
+			κ = r.sensitivity.Steepness
+		}
+		steep = append(steep, κ)
 		δ, sd, g = append(δ, r.Expected-x.Temperature), append(sd, math.Sqrt(r.variance)), append(g, p.space.gradient(&r.sensitivity))
 	}
 	var chol mat.Cholesky
@@ -71,7 +76,7 @@ func (p *Plan) verdict(own *design.Problem) error {
 			z[i] = rng.NormFloat64()
 		}
 		for i := range δ {
-			e := noise.draw(sd[i])
+			e := noise.draw(sd[i]) + noise.boil(steep[i], math.Ln2)
 			for k, d := range g[i] {
 				if d == 0 {
 					continue
@@ -131,4 +136,19 @@ func (d drawer) draw(sd float64) float64 {
 		x /= math.Sqrt(χ2 / ν)
 	}
 	return sd * x
+}
+
+// boil is the distance in K of a boiling temperature from the limit where the hazard
+// is H, for a sample with steepness κ; 0 for κ = 0. The hazard at boiling is a unit
+// exponential variable.
+func (d drawer) boil(κ, H float64) float64 {
+	if κ == 0 {
+		return 0
+	}
+	return math.Log(d.rng.ExpFloat64()/H) / κ
+}
+
+// boilsAtRandom tells whether a reading scatters by the chance of boiling itself.
+func boilsAtRandom(n fit.Noise, x *fit.Sensitivity) bool {
+	return n.Kind == fit.Survival && x.OwnFlux && x.Steepness > 0
 }
