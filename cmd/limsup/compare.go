@@ -27,7 +27,6 @@ func compareCommand() *cli.Command {
 			&cli.StringFlag{Name: "keep", Value: "90%", Usage: "`SHARE` of the rows that a variant must be able to predict"},
 			&cli.BoolFlag{Name: "nested", Usage: "estimate the error of choosing the best and then tuning it"},
 			&cli.StringFlag{Name: "noise", Usage: "`DISTRIBUTION` of the residuals: gaussian, student or student=DEGREES (default: gaussian)"},
-			&cli.BoolFlag{Name: "quiet", Usage: "show no progress"},
 			fluidsFileFlag(), formatFlag(), seedFlag(), outFlag("the tables")},
 		Action: func(c *cli.Context) error {
 			if err := begin(c); err != nil {
