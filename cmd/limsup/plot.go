@@ -1,6 +1,7 @@
 package main
 
 import (
+	"errors"
 	"fmt"
 	"io"
 	"path/filepath"
@@ -39,6 +40,10 @@ func plotCommand() *cli.Command {
 				return &usageError{fmt.Sprintf("--out %q: want a file that ends in .%s", name, strings.Join(draw.Formats(), ", ."))}
 			}
 			f, err := figureOf(c, kind)
+			var empty *plot.EmptyError
+			if errors.As(err, &empty) && empty.Err == nil {
+				return &usageError{"limsup plot: " + err.Error()}
+			}
 			if err != nil {
 				return err
 			}

@@ -101,6 +101,7 @@ func logScale(lo, hi float64) Scale {
 	s := Scale{Low: lo / pad, High: hi * pad, Log: true}
 	first, last := math.Floor(math.Log10(s.Low)), math.Ceil(math.Log10(s.High))
 	few := math.Log10(s.High/s.Low) < 2.3
+	labelled := 0
 	for d := first; d <= last; d++ {
 		for k := 1.0; k < 10; k++ {
 			v := k * math.Pow(10, d)
@@ -111,8 +112,15 @@ func logScale(lo, hi float64) Scale {
 			if k == 1 || few && (k == 2 || k == 5) {
 				t.Label = TickText(v, max(0, -int(d)))
 			}
+			if t.Label != "" {
+				labelled++
+			}
 			s.Ticks = append(s.Ticks, t)
 		}
+	}
+	if labelled < 3 {
+		// So short a stretch is nearly even: ticks at even steps.
+		s.Ticks = linearScale(s.Low, s.High).Ticks
 	}
 	return s
 }
