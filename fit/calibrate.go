@@ -16,6 +16,8 @@ type Options struct {
 	Workers int // goroutines over rows; 0: as many as processors
 	// Warm starts the search from an earlier calibration of the same plan.
 	Warm *Calibration
+
+	quick bool // values only: no uncertainties, rows or warnings
 }
 
 // Estimate is one estimated parameter.
@@ -46,13 +48,13 @@ func (e *Estimate) Label() string {
 
 // RowResult is one observation beside its prediction.
 type RowResult struct {
-	Index        int     // into Calibration.Data.Observations
-	Predicted    float64 // limit in K, offset included
-	Residual     float64 // measured − predicted, K
-	Variance     float64 // of the residual: stated uncertainties and spread, K²
-	Standardised float64 // residual/√variance
-	Leverage     float64 // share of its own reading in its prediction, 0 to 1
-	Log10Flux    float64 // log₁₀J at the predicted limit; 0 for a spinodal
+	Index        int       // into Calibration.Data.Observations
+	Predicted    float64   // limit in K, offset included
+	Residual     float64   // measured − predicted, K
+	Variance     float64   // of the residual: stated uncertainties and spread, K²
+	Standardised float64   // residual/√variance
+	Leverage     float64   // share of its own reading in its prediction, 0 to 1
+	Log10Flux    float64   // log₁₀J at the predicted limit; 0 for a spinodal
 	Gradient     []float64 // ∂Predicted/∂θ for the locations
 	Influence    Influence
 }
@@ -156,6 +158,15 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 	}
 	if err != nil {
 		return nil, err
+	}
+	if o.quick {
+		for i := range lay.theta {
+			c.Parameters = append(c.Parameters, c.estimate(&lay.theta[i], c.theta[i]))
+		}
+		for i := range lay.psi {
+			c.Parameters = append(c.Parameters, c.estimate(&lay.psi[i], c.psi[i]))
+		}
+		return c, nil
 	}
 	if err := c.finish(lik, covPsi); err != nil {
 		return nil, err

@@ -173,39 +173,12 @@ func isCondition(err error) bool {
 // point.
 func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covariance *mat.SymDense, err error) {
 	k := len(psi)
-	params := make([]leastsq.Param, k)
-	floor := make([]float64, k) // size below which a change of a variance means nothing
-	for i, f := range free {
-		if f.Name == DegreesOfNoise {
-			w := 1 / psi[i]
-			params[i] = leastsq.Param{Name: f.Label(), Start: clamp(w, 1/f.Upper, 1/f.Lower), Lower: 1 / f.Upper, Upper: 1 / f.Lower, Scale: 0.1}
-			floor[i] = 0.1
-			continue
-		}
-		lo, hi := f.Lower*f.Lower, f.Upper*f.Upper
-		w := psi[i] * psi[i]
-		params[i] = leastsq.Param{Name: f.Label(), Start: clamp(w, lo, hi), Lower: lo, Upper: hi, Scale: math.Max(w, 1e-4*f.Start*f.Start)}
-		floor[i] = 1e-3 * math.Max(lo, z.typicalVariance())
-		if f.Role == RolePoolSpread {
-			floor[i] = math.Max(lo, 1e-6*f.Start*f.Start)
-		}
-	}
-	roots := func(w []float64) []float64 { return unfold(w, free) }
-	eval := func(w, grad []float64, curv *mat.SymDense) (float64, error) {
-		v, ok := z.adjusted(roots(w))
-		if !ok {
-			return 0, errSingular
-		}
-		if grad == nil && curv == nil {
-			return v, nil
-		}
-		return v, z.differences(w, v, floor, free, grad, curv)
-	}
-	res, err := leastsq.Minimize(leastsq.Objective{Params: params, Size: len(z.l.obs), Eval: eval}, leastsq.Settings{Local: true})
+	_, floor := z.variables(psi, free)
+	res, err := leastsq.Minimize(z.outer(psi, free), leastsq.Settings{Local: true})
 	if err != nil {
 		return nil, nil, err
 	}
-	x = roots(res.X)
+	x = unfold(res.X, free)
 	g, h := make([]float64, k), mat.NewSymDense(k, nil)
 	if err := z.hessian(res.X, res.Value, floor, free, g, h); err != nil {
 		return x, nil, nil
@@ -241,6 +214,30 @@ func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covarian
 		}
 	}
 	return x, covariance, nil
+}
+
+// variables are the w of the search at ψ, and the sizes below which a change of
+// one means nothing.
+func (z *linearised) variables(psi []float64, free []Free) (params []leastsq.Param, floor []float64) {
+	k := len(psi)
+	params = make([]leastsq.Param, k)
+	floor = make([]float64, k)
+	for i, f := range free {
+		if f.Name == DegreesOfNoise {
+			w := 1 / psi[i]
+			params[i] = leastsq.Param{Name: f.Label(), Start: clamp(w, 1/f.Upper, 1/f.Lower), Lower: 1 / f.Upper, Upper: 1 / f.Lower, Scale: 0.1}
+			floor[i] = 0.1
+			continue
+		}
+		lo, hi := f.Lower*f.Lower, f.Upper*f.Upper
+		w := psi[i] * psi[i]
+		params[i] = leastsq.Param{Name: f.Label(), Start: clamp(w, lo, hi), Lower: lo, Upper: hi, Scale: math.Max(w, 1e-4*f.Start*f.Start)}
+		floor[i] = 1e-3 * math.Max(lo, z.typicalVariance())
+		if f.Role == RolePoolSpread {
+			floor[i] = math.Max(lo, 1e-6*f.Start*f.Start)
+		}
+	}
+	return params, floor
 }
 
 // typicalVariance is the mean square of the residuals, the size on which

@@ -1,0 +1,365 @@
+package fit
+
+import (
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"runtime"
+	"slices"
+	"sort"
+	"sync"
+
+	"gonum.org/v1/gonum/stat/distuv"
+
+	"limsup/data/measure"
+)
+
+// Resampling says what a bootstrap draws.
+type Resampling string
+
+// The kinds of bootstrap.
+const (
+	ResampleRows   Resampling = "rows"
+	ResampleFluid  Resampling = "fluid"  // whole fluids, with all their rows
+	ResampleMethod Resampling = "method" // whole methods
+	ResampleBatch  Resampling = "batch"  // whole batches
+	// Parametric keeps the states of all rows and draws new readings, and new values of
+	// pooled groups, from the calibrated model.
+	Parametric Resampling = "parametric"
+)
+
+// Resamplings are the words that BootstrapOptions.Resample knows.
+func Resamplings() []string {
+	return []string{string(ResampleRows), string(ResampleFluid), string(ResampleMethod), string(ResampleBatch), string(Parametric)}
+}
+
+// BootstrapOptions are the settings of a bootstrap.
+type BootstrapOptions struct {
+	Resample Resampling
+	// Replicates First to First + Count − 1 are drawn. Each has its own random numbers
+	// from Seed and its index, so that parts of a bootstrap can be drawn apart.
+	First, Count int
+	Seed         uint64
+	Queries      []Query // limits to predict with each replicate
+	Workers      int     // 0: as many as processors
+	// Progress, if not nil, is told of the replicates done, from one goroutine at a time.
+	Progress func(done, total int)
+}
+
+// Replicate is one calibration on resampled data.
+type Replicate struct {
+	Index int
+	// Values of the parameters of the calibration, in their order, and limits of the
+	// queries in K; the flags say which of them this replicate has: a group that was not
+	// drawn has no value.
+	Values   []float64
+	HasValue []bool
+	Limits   []float64
+	HasLimit []bool
+	Failure  string // why the replicate could not be calibrated, or ""
+}
+
+// Resample calibrates on resampled data. Same options, same replicates, whatever
+// the number of processors.
+//
+// Errors: *OptionError; a replicate that fails is no error but says so.
+func (c *Calibration) Resample(o BootstrapOptions) ([]Replicate, error) {
+	if !slices.Contains(Resamplings(), string(o.Resample)) {
+		return nil, &OptionError{"resample", string(o.Resample), "one of rows, fluid, method, batch, parametric"}
+	}
+	if o.Count < 1 || o.Count > 1_000_000 || o.First < 0 {
+		return nil, &OptionError{"bootstrap", fmt.Sprint(o.Count), "1 to 1000000 replicates"}
+	}
+	if by, ok := o.Resample.by(); ok {
+		if names, _ := groups(c.Data.Observations, by); len(names) < 2 {
+			return nil, &OptionError{"resample", string(o.Resample), fmt.Sprintf("data with two or more of them; here all rows have %s %q", by, names[0])}
+		}
+	}
+	workers := o.Workers
+	if workers <= 0 {
+		workers = runtime.GOMAXPROCS(0)
+	}
+	out := make([]Replicate, o.Count)
+	next := make(chan int)
+	var wg sync.WaitGroup
+	var mu sync.Mutex
+	done := 0
+	for range min(workers, o.Count) {
+		wg.Add(1)
+		go func() {
+			defer wg.Done()
+			for k := range next {
+				out[k] = c.replicate(&o, o.First+k)
+				mu.Lock()
+				if done++; o.Progress != nil {
+					o.Progress(done, o.Count)
+				}
+				mu.Unlock()
+			}
+		}()
+	}
+	for k := range o.Count {
+		next <- k
+	}
+	close(next)
+	wg.Wait()
+	return out, nil
+}
+
+func (r Resampling) by() (By, bool) {
+	switch r {
+	case ResampleFluid:
+		return ByFluid, true
+	case ResampleMethod:
+		return ByMethod, true
+	case ResampleBatch:
+		return ByBatch, true
+	}
+	return Shared, false
+}
+
+// replicate draws and calibrates replicate number index.
+func (c *Calibration) replicate(o *BootstrapOptions, index int) Replicate {
+	n := len(c.Parameters)
+	r := Replicate{Index: index, Values: make([]float64, n), HasValue: make([]bool, n), Limits: make([]float64, len(o.Queries)), HasLimit: make([]bool, len(o.Queries))}
+	rng := rand.New(rand.NewPCG(o.Seed, uint64(index)))
+	data := &Data{}
+	truth := c.theta
+	var err error
+	switch by, grouped := o.Resample.by(); {
+	case grouped:
+		data.Observations = drawGroups(c.Data.Observations, by, rng)
+	case o.Resample == ResampleRows:
+		data.Observations = make([]Observation, len(c.Data.Observations))
+		for i := range data.Observations {
+			data.Observations[i] = c.Data.Observations[rng.IntN(len(c.Data.Observations))]
+		}
+	default:
+		data.Observations, truth, err = c.draw(rng)
+	}
+	var again *Calibration
+	if err == nil {
+		again, err = Calibrate(data, c.Plan, Options{Workers: 1, Warm: c, quick: true})
+	}
+	if err == nil && !again.Converged {
+		err = &ConvergenceError{c.Plan.Variant.Name(), again.Reason, nil}
+	}
+	if err != nil {
+		r.Failure = err.Error()
+		return r
+	}
+	at := make(map[string]float64, n)
+	for i := range again.Parameters {
+		at[again.Parameters[i].Label()] = again.Parameters[i].Value
+	}
+	for i := range c.Parameters {
+		r.Values[i], r.HasValue[i] = at[c.Parameters[i].Label()]
+		if i < len(truth) {
+			// A pooled value was drawn anew: its error counts, about the estimate.
+			r.Values[i] += c.theta[i] - truth[i]
+		}
+	}
+	m := again.Model()
+	for k := range o.Queries {
+		q := o.Queries[k]
+		q.OrSpinodal = true
+		if _, found := m.values(&q); slices.ContainsFunc(found[:], func(l lookup) bool { return l.foreign }) {
+			if _, before := c.Model().values(&q); !slices.ContainsFunc(before[:], func(l lookup) bool { return l.foreign }) {
+				continue // what the limit depends on was not drawn
+			}
+		}
+		if p, err := m.Predict(q); err == nil {
+			r.Limits[k], r.HasLimit[k] = p.Temperature, true
+		}
+	}
+	return r
+}
+
+// drawGroups draws whole groups; one that comes up again is a group of its own, so
+// that a pooled spread sees as many groups as there were.
+func drawGroups(obs []Observation, by By, rng *rand.Rand) []Observation {
+	names, _ := groups(obs, by)
+	rows := map[string][]int{}
+	for i := range obs {
+		g := groupOf(by, &obs[i].Row)
+		rows[g] = append(rows[g], i)
+	}
+	var out []Observation
+	times := map[string]int{}
+	for range names {
+		g := names[rng.IntN(len(names))]
+		times[g]++
+		for _, i := range rows[g] {
+			o := obs[i]
+			if k := times[g]; k > 1 {
+				name := fmt.Sprintf("%s (%d)", g, k)
+				switch by {
+				case ByFluid:
+					o.Key = name
+				case ByMethod:
+					o.Method = name
+				case ByBatch:
+					o.Batch = name
+				}
+			}
+			out = append(out, o)
+		}
+	}
+	return out
+}
+
+// draw draws new readings from the model, and the values of pooled groups behind
+// them. A row that was intact at its temperature boils if the reading drawn lies
+// below; a row that boiled keeps no oven limit.
+func (c *Calibration) draw(rng *rand.Rand) ([]Observation, []float64, error) {
+	lay, err := newLayout(&c.Plan, c.Data.Observations)
+	if err != nil {
+		return nil, nil, err
+	}
+	lik, err := newLikelihood(&c.Plan, c.Data.Observations, lay, 1)
+	if err != nil {
+		return nil, nil, err
+	}
+	theta := slices.Clone(c.theta)
+	for _, p := range lay.pools {
+		mean := 0.0
+		if p.mean >= 0 {
+			mean = theta[p.mean]
+		}
+		for _, g := range p.values {
+			f := &lay.theta[g]
+			theta[g] = clamp(mean+c.psi[p.spread]*rng.NormFloat64(), f.Lower, f.Upper)
+		}
+	}
+	for i := range lik.guess {
+		lik.guess[i] = c.Rows[i].Predicted
+	}
+	if err := lik.evaluate(theta); err != nil {
+		return nil, nil, err
+	}
+	lik.hold()
+	variance := lik.variances(c.psi, nil)
+	ν := 0.0
+	if n := c.noise(); n.Kind == Student {
+		ν = n.Degrees
+	}
+	obs := slices.Clone(c.Data.Observations)
+	for i := range obs {
+		o := &obs[i]
+		e := rng.NormFloat64()
+		if ν > 0 {
+			e /= math.Sqrt(distuv.ChiSquared{K: ν, Src: rng}.Rand() / ν)
+		}
+		e *= math.Sqrt(variance[i])
+		if κ := lik.steepness[i]; κ > 0 {
+			e += math.Log(rng.ExpFloat64()/o.Hazard) / κ
+		}
+		T := o.Temperature - lik.residual(i) + e
+		if o.Outcome == measure.Boiled || T < o.Temperature {
+			o.Temperature, o.Outcome = T, measure.Boiled
+		}
+		o.Start = lik.limit[i].T
+	}
+	return obs, theta, nil
+}
+
+// Resampled summarises one quantity over the replicates.
+type Resampled struct {
+	Label    string
+	Estimate float64
+	N        int     // replicates that have it
+	SD       float64 // standard deviation of the replicates
+	Bias     float64 // their mean less the estimate
+	// Percentile and Basic intervals: quantiles q of the replicates, and 2·estimate − q.
+	Percentile, Basic [2]float64
+}
+
+// Bootstrap is the summary of replicates.
+type Bootstrap struct {
+	Level      float64
+	Replicates int
+	Failed     int
+	Failures   []string // different reasons, with how often each came up
+	Parameters []Resampled
+	Limits     []Resampled // of the queries
+}
+
+// Summarise summarises replicates of the same calibration at a two-sided level.
+//
+// Errors: *OptionError for a level; *ConvergenceError when fewer than two replicates
+// are left.
+func (c *Calibration) Summarise(reps []Replicate, queries []Query, level float64) (*Bootstrap, error) {
+	if !(level > 0 && level < 1) {
+		return nil, &OptionError{"level", fmt.Sprintf("%.10g", level), "a number between 0 and 1"}
+	}
+	b := &Bootstrap{Level: level, Replicates: len(reps)}
+	reps = slices.Clone(reps)
+	sort.SliceStable(reps, func(i, j int) bool { return reps[i].Index < reps[j].Index })
+	count := map[string]int{}
+	for i := range reps {
+		if f := reps[i].Failure; f != "" {
+			b.Failed++
+			count[f]++
+		}
+	}
+	for f, n := range count {
+		b.Failures = append(b.Failures, fmt.Sprintf("%d times: %s", n, f))
+	}
+	sort.Strings(b.Failures)
+	if b.Replicates-b.Failed < 2 {
+		return nil, &ConvergenceError{c.Plan.Variant.Name(), fmt.Sprintf("bootstrap: %d of %d replicates failed; %s", b.Failed, b.Replicates, join(b.Failures)), nil}
+	}
+	for i := range c.Parameters {
+		e := &c.Parameters[i]
+		b.Parameters = append(b.Parameters, summarise(e.Label(), e.Value, level, reps, func(r *Replicate) (float64, bool) { return r.Values[i], r.HasValue[i] }))
+	}
+	m := c.Model()
+	for k, q := range queries {
+		q.OrSpinodal = true
+		p, err := m.Predict(q)
+		if err != nil {
+			return nil, err
+		}
+		label := fmt.Sprintf("%s at %.6g kPa", q.Record.Key, q.Pressure/1e3)
+		b.Limits = append(b.Limits, summarise(label, p.Temperature, level, reps, func(r *Replicate) (float64, bool) { return r.Limits[k], r.HasLimit[k] }))
+	}
+	return b, nil
+}
+
+func summarise(label string, estimate, level float64, reps []Replicate, of func(r *Replicate) (float64, bool)) Resampled {
+	s := Resampled{Label: label, Estimate: estimate}
+	var x []float64
+	for i := range reps {
+		if reps[i].Failure != "" {
+			continue
+		}
+		if v, ok := of(&reps[i]); ok {
+			x = append(x, v)
+		}
+	}
+	s.N = len(x)
+	if s.N < 2 {
+		return s
+	}
+	mean, ss := 0.0, 0.0
+	for _, v := range x {
+		mean += v / float64(s.N)
+	}
+	for _, v := range x {
+		ss += (v - mean) * (v - mean)
+	}
+	s.SD, s.Bias = math.Sqrt(ss/float64(s.N-1)), mean-estimate
+	sort.Float64s(x)
+	for side, p := range [2]float64{0.5 - level/2, 0.5 + level/2} {
+		s.Percentile[side] = quantileOf(x, p)
+	}
+	s.Basic = [2]float64{2*estimate - s.Percentile[1], 2*estimate - s.Percentile[0]}
+	return s
+}
+
+// quantileOf interpolates between order statistics at (n−1)p.
+func quantileOf(sorted []float64, p float64) float64 {
+	h := p * float64(len(sorted)-1)
+	k := min(int(h), len(sorted)-2)
+	return sorted[k] + (h-float64(k))*(sorted[k+1]-sorted[k])
+}

@@ -1,0 +1,144 @@
+package fit
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"gonum.org/v1/gonum/mat"
+	"gonum.org/v1/gonum/stat/distuv"
+
+	"limsup/fit/leastsq"
+)
+
+// Range is a profile-likelihood interval of one parameter; it need not lie
+// symmetrically about the estimate.
+type Range struct {
+	Label, Unit  string
+	Level        float64
+	Estimate     float64
+	Lower, Upper float64 // where an end is Unbounded, the infinite value stands
+	// LowerEnd and UpperEnd say how the ends came about: crossed, at the bound of the
+	// parameter, unbounded, or not evaluable beyond.
+	LowerEnd, UpperEnd leastsq.End
+	Warnings           []string
+}
+
+// String is the interval in words.
+func (r *Range) String() string {
+	end := func(v float64, e leastsq.End, side string) string {
+		switch e {
+		case leastsq.AtLimit:
+			return fmt.Sprintf("its %s bound %.6g (the data set no limit before it)", side, v)
+		case leastsq.Unbounded:
+			return "no " + side + " limit"
+		case leastsq.Unevaluated:
+			return fmt.Sprintf("%.6g (the model has no prediction beyond)", v)
+		}
+		return fmt.Sprintf("%.6g", v)
+	}
+	return end(r.Lower, r.LowerEnd, "lower") + " to " + end(r.Upper, r.UpperEnd, "upper")
+}
+
+// mostT caps Student's quantile of a profile: a rise of −ln L by ½·8² is beyond any
+// level that can be told from certainty.
+const mostT = 8
+
+// Profile returns the interval of a parameter by its label, as Estimate.Label gives it.
+//
+// For a location, −ln L minimised over the other locations, with the spreads at their
+// estimates, may rise by ½t², with t the quantile of Student's t with the degrees of
+// freedom of the parameter: for normal noise of one spread this is the profile t of
+// D. M. Bates and D. G. Watts, Nonlinear Regression Analysis, Wiley 1988 (from memory).
+// For a spread, the restricted likelihood A (see spreads.go), minimised over the
+// other spreads, may rise by half a quantile of χ² with one degree of freedom.
+//
+// Errors: *OptionError for an unknown label or level, *leastsq.LowerMinimumError when
+// the estimates are not the optimum, those of Calibrate.
+func (c *Calibration) Profile(label string, level float64) (Range, error) {
+	if !(level > 0 && level < 1) {
+		return Range{}, &OptionError{"level", fmt.Sprintf("%.10g", level), "a number between 0 and 1"}
+	}
+	at := -1
+	var labels []string
+	for i := range c.Parameters {
+		l := c.Parameters[i].Label()
+		labels = append(labels, l)
+		if l == label {
+			at = i
+		}
+	}
+	if at < 0 {
+		return Range{}, &OptionError{"profile", label, "one of " + strings.Join(labels, ", ")}
+	}
+	lay, err := newLayout(&c.Plan, c.Data.Observations)
+	if err != nil {
+		return Range{}, err
+	}
+	lik, err := newLikelihood(&c.Plan, c.Data.Observations, lay, 0)
+	if err != nil {
+		return Range{}, err
+	}
+	if err := lik.evaluate(c.theta); err != nil {
+		return Range{}, err
+	}
+	lik.hold()
+	e := &c.Parameters[at]
+	r := Range{Label: label, Unit: e.Unit, Level: level, Estimate: e.Value}
+	var iv leastsq.Interval
+	if at < c.Locations {
+		ν := e.Degrees
+		if ν == 0 {
+			ν = float64(c.Degrees)
+		}
+		t := student(0.5+level/2, ν)
+		if t > mostT {
+			r.Warnings = append(r.Warnings, fmt.Sprintf("%.3g degrees of freedom are too few for a level of %g; the ends are those of t = %g", ν, level, float64(mostT)))
+			t = mostT
+		}
+		point := &leastsq.Result{X: c.theta, StdErr: make([]float64, len(c.theta))}
+		for i := range c.theta {
+			point.StdErr[i] = c.Parameters[i].U
+		}
+		iv, err = leastsq.Profile(c.objective(lik, lik.variances(c.psi, nil)), point, at, distuv.ChiSquared{K: 1}.CDF(t*t), leastsq.Settings{})
+		r.Lower, r.Upper, r.LowerEnd, r.UpperEnd = iv.Lower, iv.Upper, iv.LowerEnd, iv.UpperEnd
+	} else {
+		var z *linearised
+		if z, err = newLinearised(lik, c.theta, c.active(lay)); err != nil {
+			return Range{}, err
+		}
+		k := at - c.Locations
+		o := z.outer(c.psi, lay.psi)
+		point := &leastsq.Result{X: make([]float64, len(c.psi))}
+		for i, p := range o.Params {
+			point.X[i] = p.Start
+		}
+		iv, err = leastsq.Profile(o, point, k, level, leastsq.Settings{})
+		one := lay.psi[k : k+1]
+		a, b := unfold([]float64{iv.Lower}, one)[0], unfold([]float64{iv.Upper}, one)[0]
+		r.Lower, r.Upper, r.LowerEnd, r.UpperEnd = a, b, iv.LowerEnd, iv.UpperEnd
+		if a > b {
+			r.Lower, r.Upper, r.LowerEnd, r.UpperEnd = b, a, iv.UpperEnd, iv.LowerEnd
+		}
+	}
+	r.Warnings = append(r.Warnings, iv.Warnings...)
+	return r, err
+}
+
+// outer is A as a function of w, see estimate.
+func (z *linearised) outer(psi []float64, free []Free) leastsq.Objective {
+	params, floor := z.variables(psi, free)
+	return leastsq.Objective{Params: params, Size: len(z.l.obs), Eval: func(w, grad []float64, curv *mat.SymDense) (float64, error) {
+		v, ok := z.adjusted(unfold(w, free))
+		if !ok || math.IsNaN(v) {
+			return 0, errSingular
+		}
+		if grad == nil && curv == nil {
+			return v, nil
+		}
+		if grad == nil {
+			grad = make([]float64, len(w))
+		}
+		return v, z.differences(w, v, floor, free, grad, curv)
+	}}
+}
