@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"io"
 	"strings"
+	"time"
 
 	"github.com/urfave/cli/v2"
 
@@ -59,8 +60,8 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 	for _, c := range app.Commands {
 		c.OnUsageError = onUsageError
 		c.HideHelp, c.HideHelpCommand = true, true
-		c.Flags = append(c.Flags, general()...)
-		c.Before = prepare
+		c.Flags = withGeneral(c.Flags)
+		c.Before, c.After = prepare, finish(time.Now())
 	}
 	return app
 }

@@ -120,3 +120,18 @@ func shown(s string) string {
 	}
 	return s
 }
+
+// visible puts an escape such as \x1b in place of every character that is not
+// printed but obeyed by a terminal. Line ends stay.
+func visible(s string) string {
+	var b strings.Builder
+	for _, r := range s {
+		if r == '\n' || unicode.IsPrint(r) {
+			b.WriteRune(r)
+			continue
+		}
+		q := strconv.QuoteRune(r)
+		b.WriteString(q[1 : len(q)-1])
+	}
+	return b.String()
+}

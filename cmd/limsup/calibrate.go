@@ -48,6 +48,7 @@ func calibrateCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
+			tell(c, "search: %d evaluations of all rows; %s", r.Evaluations, r.Reason)
 			if name := c.String("out"); name != "" {
 				if err := r.writeModel(name, c.Uint64("seed")); err != nil {
 					return err

@@ -54,7 +54,11 @@ func readData(c *cli.Context, lib *fluid.Library) (*measure.Set, error) {
 	if len(names) == 0 {
 		return nil, &usageError{commandName(c) + " needs --data FILE"}
 	}
+	if c.IsSet("sheet") && !slices.ContainsFunc(names, measure.IsWorkbook) {
+		return nil, &usageError{"--sheet goes with a workbook, and no file of --data ends in .xlsx or .xlsm"}
+	}
 	o := measure.Options{
+		Sheet: c.String("sheet"),
 		KnownFluid: func(name string) (string, error) {
 			r, err := lib.Find(name)
 			if err != nil {

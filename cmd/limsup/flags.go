@@ -30,7 +30,11 @@ func seedFlag() cli.Flag {
 }
 
 func dataFlag() cli.Flag {
-	return &cli.StringSliceFlag{Name: "data", Usage: "measurements, a CSV `FILE` (repeatable)"}
+	return &cli.StringSliceFlag{Name: "data", Usage: "measurements, a CSV or XLSX `FILE` (repeatable)"}
+}
+
+func sheetFlag() cli.Flag {
+	return &cli.StringFlag{Name: "sheet", Usage: "`NAME` of the sheet in workbooks of --data (default: the only one with a header of measurements)"}
 }
 
 func fluidsFileFlag() cli.Flag {

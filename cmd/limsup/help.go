@@ -4,7 +4,9 @@ import (
 	"fmt"
 	"io"
 	"os"
+	"slices"
 	"strings"
+	"time"
 
 	"github.com/urfave/cli/v2"
 
@@ -36,11 +38,7 @@ func manCommand() *cli.Command {
 			if err := noArguments(c); err != nil {
 				return err
 			}
-			m, err := handbook(c.App)
-			if err != nil {
-				return err
-			}
-			return writeText(c, m.Man())
+			return writeText(c, handbook(c.App, nil).Man())
 		},
 	}
 }
@@ -58,12 +56,16 @@ func completionCommand() *cli.Command {
 			if c.Args().Len() != 1 {
 				return &usageError{"limsup completion takes one argument, the shell: " + strings.Join(manual.Shells(), ", ")}
 			}
-			m, err := handbook(c.App)
+			lib, err := fluid.Builtin()
 			if err != nil {
 				return err
 			}
+			var keys []string
+			for _, r := range lib.All() {
+				keys = append(keys, r.Key)
+			}
 			shell := c.Args().First()
-			script, ok := m.Completion(shell)
+			script, ok := handbook(c.App, keys).Completion(shell)
 			if !ok {
 				return &usageError{fmt.Sprintf("no completion for the shell %q%s; the shells are %s", shell, suggest("", quantity.Near(shell, manual.Shells())), strings.Join(manual.Shells(), ", "))}
 			}
@@ -81,6 +83,19 @@ func general() []cli.Flag {
 	}
 }
 
+// withGeneral adds the general flags; they replace flags of the same names. Where
+// there are measurements, the sheet can be chosen.
+func withGeneral(list []cli.Flag) []cli.Flag {
+	if i := slices.IndexFunc(list, func(f cli.Flag) bool { return f.Names()[0] == "data" }); i >= 0 {
+		list = slices.Insert(list, i+1, sheetFlag())
+	}
+	more := general()
+	taken := func(f cli.Flag) bool {
+		return slices.ContainsFunc(more, func(g cli.Flag) bool { return g.Names()[0] == f.Names()[0] })
+	}
+	return append(slices.DeleteFunc(list, taken), more...)
+}
+
 // prepare obeys the general flags before a command begins.
 func prepare(c *cli.Context) error {
 	if c.Bool("quiet") && c.Bool("verbose") {
@@ -90,6 +105,14 @@ func prepare(c *cli.Context) error {
 		c.App.ErrWriter = io.Discard // errors are written by main
 	}
 	return nil
+}
+
+// finish says for --verbose how long a command that began at the given time took.
+func finish(began time.Time) cli.AfterFunc {
+	return func(c *cli.Context) error {
+		tell(c, "time: %.2f s", time.Since(began).Seconds())
+		return nil
+	}
 }
 
 // tell writes a note about the work for --verbose.
@@ -114,10 +137,7 @@ func showHelp(app *cli.App, line *commandLine) error {
 			return &usageError{fmt.Sprintf("limsup help takes one command; %q is left over", line.rest[1])}
 		}
 	}
-	m, err := handbook(app)
-	if err != nil {
-		return err
-	}
+	m := handbook(app, nil)
 	width := helpWidth(app.Writer)
 	page := m.Page(width)
 	if about != "" {
@@ -131,7 +151,7 @@ func showHelp(app *cli.App, line *commandLine) error {
 			return unknownCommand(app, about)
 		}
 	}
-	_, err = io.WriteString(app.Writer, page)
+	_, err := io.WriteString(app.Writer, page)
 	return err
 }
 
@@ -144,16 +164,10 @@ func helpWidth(w io.Writer) int {
 	return max(40, min(table.Width(w), 100))
 }
 
-// handbook describes the program and all its commands.
-func handbook(app *cli.App) (*manual.Program, error) {
-	lib, err := fluid.Builtin()
-	if err != nil {
-		return nil, err
-	}
-	var keys, parameters []string
-	for _, r := range lib.All() {
-		keys = append(keys, r.Key)
-	}
+// handbook describes the program and all its commands; fluids are the keys to be
+// completed.
+func handbook(app *cli.App, fluids []string) *manual.Program {
+	var parameters []string
 	for _, p := range fit.ParameterTable() {
 		parameters = append(parameters, p.Name)
 	}
@@ -163,7 +177,7 @@ func handbook(app *cli.App) (*manual.Program, error) {
 		Words: func(flag string) []string {
 			switch flag {
 			case "fluid":
-				return keys
+				return fluids
 			case "folds":
 				return []string{"rows", "fluid", "method", "batch", "pressure", noFolds}
 			case "noise":
@@ -200,7 +214,7 @@ func handbook(app *cli.App) (*manual.Program, error) {
 	for _, c := range app.Commands {
 		m.Commands = append(m.Commands, manual.NewCommand(app.Name, c, g))
 	}
-	return m, nil
+	return m
 }
 
 // group is the title under which a help page lists a flag; "" is the first one.

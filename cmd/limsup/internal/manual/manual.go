@@ -64,8 +64,13 @@ type Guide struct {
 
 // NewCommand describes a command of program.
 func NewCommand(program string, c *cli.Command, g Guide) *Command {
-	out := &Command{Program: program, Name: c.Name, Usage: c.Usage, Arguments: c.ArgsUsage, Words: g.Args(c.Name)}
+	out := &Command{Program: program, Name: c.Name, Usage: c.Usage, Words: g.Args(c.Name)}
 	out.About, out.Examples = split(c.Description)
+	arguments, note, noted := strings.Cut(c.ArgsUsage, " (")
+	out.Arguments = arguments
+	if noted {
+		out.About = append([]string{"Arguments: " + strings.TrimSuffix(note, ")") + "."}, out.About...)
+	}
 	groups := map[string]*Group{}
 	for _, t := range g.Titles {
 		groups[t] = &Group{Title: t}
@@ -148,11 +153,15 @@ func split(description string) (about, examples []string) {
 
 // synopsis is the shortest form of the command line.
 func (c *Command) synopsis() string {
-	s := c.Program + " " + c.Name
+	const flags = " [--flag value ...]"
+	s, arguments := c.Program+" "+c.Name, ""
 	if c.Arguments != "" {
-		s += " " + c.Arguments
+		arguments = " " + c.Arguments
 	}
-	return s + " [--flag value ...]"
+	if strings.HasPrefix(c.Arguments, "--") {
+		return s + flags + arguments // after two hyphens there are no more flags
+	}
+	return s + arguments + flags
 }
 
 // label is a flag as it is typed.

@@ -72,7 +72,7 @@ func (b *roff) macro(name string, args ...string) {
 // text writes a line of text, which must not begin like a request.
 func (b *roff) text(s string) {
 	s = escaped(s)
-	if strings.HasPrefix(s, ".") || strings.HasPrefix(s, "'") {
+	if strings.HasPrefix(s, ".") {
 		s = `\&` + s
 	}
 	b.raw(s + "\n")
@@ -100,8 +100,8 @@ func escaped(s string) string {
 		switch {
 		case r == '\\':
 			b.WriteString(`\(rs`)
-		case r == '-':
-			b.WriteString(`\-`)
+		case strings.ContainsRune("-'`^~", r): // which a typesetter would make into dashes, quotes and accents
+			b.WriteString(map[rune]string{'-': `\-`, '\'': `\(aq`, '`': `\(ga`, '^': `\(ha`, '~': `\(ti`}[r])
 		case r == '\n' || r == '\t':
 			b.WriteByte(' ')
 		case r < ' ' || r == 0x7f:
