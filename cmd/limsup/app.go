@@ -53,7 +53,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		CommandNotFound:           nil,
 		Commands: []*cli.Command{
 			checkCommand(), calibrateCommand(), validateCommand(), compareCommand(), predictCommand(),
-			fluidsCommand(), isothermCommand(), embryoCommand(), fluxCommand(), plotCommand(), reportCommand(),
+			fluidsCommand(), isothermCommand(), embryoCommand(), fluxCommand(), shareCommand(), gatherCommand(), plotCommand(), reportCommand(),
 			helpCommand(), manCommand(), completionCommand(),
 		},
 	}

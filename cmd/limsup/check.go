@@ -77,7 +77,7 @@ func readData(c *cli.Context, lib *fluid.Library) (*measure.Set, error) {
 	var sets []*measure.Set
 	var problems measure.Problems
 	for _, name := range names {
-		set, err := measure.ReadFile(name, o)
+		set, err := readMeasurements(c, name, o)
 		if ps, ok := err.(measure.Problems); ok {
 			problems = append(problems, ps...)
 			continue

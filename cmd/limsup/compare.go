@@ -18,7 +18,7 @@ func compareCommand() *cli.Command {
 		Description: "Every variant is tuned to the rows that all of them can predict and judged on rows left out of the tuning; published rules stand beside them. The difference to the best has a standard error from the scatter between folds, and variants within one of it are named as not distinguishable.\n\n" +
 			"A variant that predicts less than the share --keep of the rows is set aside with its reason. --nested repeats the choice of the best without each fold, and tells what choosing adds to the error; its time grows with the square of the number of folds (--folds 10 keeps it short).\n\n" +
 			"A --variant is written as parts joined by semicolons, KEY=VALUE or the name of an equation; keys: equation, limit, surface-tension, properties, embryo-pressure, kinetics, set (NAME=VALUE), tune (a term of calibrate, repeatable, or none).\n\n" +
-			"Interrupting with Ctrl-C prints the variants that are finished.\n\n" +
+			"Interrupting with Ctrl-C prints the variants that are finished. On several machines, --share divides the work (see limsup gather and limsup share).\n\n" +
 			"Examples: limsup compare --data drops.csv\n" +
 			"          limsup compare --data drops.csv --variant soave --variant \"redlich-kwong; tune=threshold; tune=slope\" --nested",
 		Flags: []cli.Flag{dataFlag(),
@@ -27,9 +27,13 @@ func compareCommand() *cli.Command {
 			&cli.StringFlag{Name: "keep", Value: "90%", Usage: "`SHARE` of the rows that a variant must be able to predict"},
 			&cli.BoolFlag{Name: "nested", Usage: "estimate the error of choosing the best and then tuning it"},
 			&cli.StringFlag{Name: "noise", Usage: "`DISTRIBUTION` of the residuals: gaussian, student or student=DEGREES (default: gaussian)"},
-			fluidsFileFlag(), formatFlag(), seedFlag(), outFlag("the tables")},
+			fluidsFileFlag(), formatFlag(), seedFlag(), shareFlag(), outFlag("the tables, or the part of a share,")},
 		Action: func(c *cli.Context) error {
 			if err := begin(c); err != nil {
+				return err
+			}
+			part, divided, err := sharing(c)
+			if err != nil {
 				return err
 			}
 			o, err := compareOptions(c)
@@ -46,7 +50,11 @@ func compareCommand() *cli.Command {
 			}
 			bar := startProgress(c, "comparing variants")
 			o.Progress = bar.Set
-			r, err := validate.Compare(c.Context, set, lib, o)
+			if divided {
+				defer bar.Stop()
+				return writeComparisonPart(c, part, set, lib, o)
+			}
+			r, err := compareOrGather(c, set, lib, o)
 			bar.Stop()
 			if err != nil {
 				return err

@@ -140,7 +140,7 @@ func library(c *cli.Context) (*fluid.Library, error) {
 		return nil, err
 	}
 	for _, name := range c.StringSlice("fluids") {
-		records, err := readFluids(name)
+		records, err := readFluidsOf(c, name)
 		if err != nil {
 			return nil, err
 		}

@@ -7,6 +7,7 @@ import (
 	"strings"
 
 	"limsup/cmd/limsup/internal/atomicfile"
+	"limsup/cmd/limsup/internal/engine"
 	"limsup/data/fluid"
 	"limsup/data/measure"
 	"limsup/data/quantity"
@@ -16,6 +17,7 @@ import (
 	"limsup/fit"
 	"limsup/fit/modelfile"
 	"limsup/validate"
+	"limsup/validate/share"
 )
 
 // Exit statuses.
@@ -52,6 +54,7 @@ func status(err error) int {
 		is[*fluid.UnknownError](err), is[*fluid.MissingError](err), is[*fluid.RangeError](err), is[*fluid.Problem](err), is[*modelfile.InvalidError](err), is[*modelfile.SyntaxError](err), is[*tension.ParameterError](err),
 		is[*tension.RangeError](err), is[*fit.OptionError](err), is[*fit.TooFewError](err), is[*fit.UnavailableError](err),
 		is[*eos.DomainError](err), is[*eos.ParameterError](err), is[*eos.UnknownEquationError](err),
+		is[*share.ShareError](err), is[*share.FormatError](err), is[share.Problems](err), is[*validate.ResultError](err), is[*engine.TaskError](err),
 		is[*atomicfile.WriteError](err), is[*fs.PathError](err):
 		return statusInput
 	case is[*fit.RowError](err), is[*validate.FoldError](err):
