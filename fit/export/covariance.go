@@ -21,7 +21,7 @@ type place struct {
 // placeOf finds the estimate that fit.Model.Predict uses: that of the group of the
 // query, else the mean of a pool with its spread.
 func (s *subject) placeOf(name string, q *fit.Query) place {
-	mean, spread := -1, 0.0
+	mean, pooled, spread := -1, false, 0.0
 	for i := range s.model.Parameters {
 		e := &s.model.Parameters[i]
 		if e.Name != name {
@@ -31,17 +31,17 @@ func (s *subject) placeOf(name string, q *fit.Query) place {
 		case fit.RolePoolMean:
 			mean = i
 		case fit.RolePoolSpread:
-			spread = e.Value
+			pooled, spread = true, e.Value
 		default:
 			if e.Group == s.group(e.By, q) {
 				return place{at: i}
 			}
 		}
 	}
-	if mean < 0 {
+	if mean < 0 && !pooled {
 		return place{at: -1}
 	}
-	return place{mean, spread * spread}
+	return place{mean, spread * spread} // offsets may be scattered about zero, without a mean
 }
 
 // group is the group of a query, the reference where it names none.
@@ -68,9 +68,9 @@ func (s *subject) covarianceColumns(c []float64, q *fit.Query) {
 	for i, name := range locations {
 		at[i] = s.placeOf(name, q)
 	}
-	if k := at[len(locations)-1].at; k >= 0 {
-		c[kernel.KOffset] = s.model.Parameters[k].Value
-	} else {
+	if o := at[len(locations)-1]; o.at >= 0 {
+		c[kernel.KOffset] = s.model.Parameters[o.at].Value
+	} else if !(o.variance > 0) {
 		c[kernel.KOffset] = s.setting(fit.Offset)
 	}
 	if !s.model.Calibrated || s.model.Covariance == nil {

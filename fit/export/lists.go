@@ -61,7 +61,7 @@ func (s *subject) parameters(w io.Writer) error {
 		rows = append(rows, s.fixedRow(label.Label(), x.Name, x.Group, x.Value, "set"))
 	}
 	for _, p := range fit.ParameterTable() {
-		if !estimated[p.Name] {
+		if !estimated[p.Name] && (p.Name != fit.DegreesOfNoise || s.model.Noise.Kind == fit.Student) {
 			rows = append(rows, s.fixedRow(p.Name, p.Name, "", s.published(p), "as published"))
 		}
 	}
@@ -89,6 +89,9 @@ func (s *subject) fixedRow(label, name, group string, value float64, state strin
 func (s *subject) published(p fit.Parameter) float64 {
 	if p.Name == fit.Spread {
 		return 0 // nothing is known of the readings of a model without data
+	}
+	if p.Name == fit.DegreesOfNoise {
+		return s.model.Noise.Degrees
 	}
 	v := s.model.Values(&fit.Query{Record: &fluid.Record{}})
 	for name, value := range map[string]float64{fit.Threshold: v.Threshold, fit.Prefactor: v.Prefactor, fit.Attraction: v.Attraction,

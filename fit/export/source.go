@@ -173,7 +173,7 @@ func (s *subject) header() []string {
 	out = append(out, s.parameterTexts()...)
 	var legend []string
 	for _, c := range kernel.Columns() {
-		legend = append(legend, fmt.Sprintf("%d %s%s", c.Index, c.Name, after(" in ", c.Unit)))
+		legend = append(legend, fmt.Sprintf("%d %s%s", c.Index, c.Name, after(" in ", unit(c.Unit))))
 	}
 	out = append(out, "Columns of the constants of a fluid, counted from 0: "+strings.Join(legend, "; ")+". The coefficients of correlations follow.")
 	return append(out, s.o.Cautions...)

@@ -42,7 +42,7 @@ type Options struct {
 	Records       []*fluid.Record // the fluids, at least one
 	Method, Batch string          // whose parameters and offset are used; "": the reference
 	// From and To are the range of absolute pressure in Pa. Both 0: that of the
-	// calibration, else 0 to 0.9 of the lowest critical pressure.
+	// calibration, else 0.1 MPa to 0.9 of the lowest critical pressure.
 	From, To  float64
 	Tolerance float64 // of table and series in K; 0: 0.01
 	Prefix    string  // of names in source code; "": "limsup_"
@@ -57,8 +57,10 @@ const (
 	defaultTolerance = 0.01
 	defaultPrefix    = "limsup_"
 	// defaultTop is the part of the critical pressure to which an untuned model is
-	// exported: beyond, limit and critical temperature all but coincide.
-	defaultTop = 0.9
+	// exported: beyond, limit and critical temperature all but coincide. defaultBottom, in
+	// Pa, is about that of the air.
+	defaultTop    = 0.9
+	defaultBottom = 1e5
 )
 
 // subject is what is exported.
@@ -142,6 +144,7 @@ func (s *subject) setRange() error {
 		for _, r := range s.o.Records {
 			s.high = math.Min(s.high, defaultTop*r.CriticalPressure.Value)
 		}
+		s.low = math.Min(defaultBottom, 0.1*s.high)
 	}
 	if !(math.Abs(s.low) <= 1e15 && math.Abs(s.high) <= 1e15 && s.low <= s.high) {
 		return &OptionError{"range of pressure", number(s.low) + " Pa to " + number(s.high) + " Pa", "a lower end that is not above the upper one"}

@@ -7,6 +7,7 @@ import (
 	"slices"
 
 	"limsup/data/fluid"
+	"limsup/fit/export/internal/kernel"
 )
 
 // This file writes limits over a grid of pressure that halves itself until the line
@@ -20,9 +21,10 @@ const (
 	tableSafety  = 0.8
 	statedMargin = 1.05
 	probes       = 7
-	// mostHalvings bounds the cutting; where the limit ends, the part left is this
-	// small.
-	mostHalvings = 14
+	// edgeHalvings bounds the cutting towards the end of a column, mostHalvings that of
+	// a bend: saturation near zero pressure needs one for every octave.
+	edgeHalvings = 14
+	mostHalvings = 40
 )
 
 // columns of temperature that a table interpolates.
@@ -30,10 +32,10 @@ var tableColumns = []struct {
 	name string
 	of   func(*expected) (float64, bool)
 }{
-	{"temperature/K", func(x *expected) (float64, bool) { return x.T, x.Status == 0 }},
-	{"standard_uncertainty/K", func(x *expected) (float64, bool) { return x.U, x.Status == 0 && x.HasU }},
-	{"saturation/K", func(x *expected) (float64, bool) { return x.Saturation, x.Status == 0 && x.HasSat }},
-	{"spinodal/K", func(x *expected) (float64, bool) { return x.Spinodal, x.Status == 0 && x.HasSpinodal }},
+	{"temperature/K", func(x *expected) (float64, bool) { return x.T, x.Status == kernel.Fine }},
+	{"standard_uncertainty/K", func(x *expected) (float64, bool) { return x.U, x.Status == kernel.Fine && x.HasU }},
+	{"saturation/K", func(x *expected) (float64, bool) { return x.Saturation, x.Status == kernel.Fine && x.HasSat }},
+	{"spinodal/K", func(x *expected) (float64, bool) { return x.Spinodal, x.Status == kernel.Fine && x.HasSpinodal }},
 }
 
 // grid holds the states of one fluid and what the lines between them err by.
@@ -78,6 +80,9 @@ func (s *subject) gridText(r *fluid.Record, g *grid) string {
 	t := fmt.Sprintf("%s: %d rows. ", r.Key, len(g.states))
 	if len(g.states) == 1 {
 		return t + "The range is one pressure; nothing is interpolated."
+	}
+	if !slices.ContainsFunc(g.states, func(x expected) bool { return x.Status == kernel.Fine }) {
+		return t + "At each of them there is no limit: " + statuses()[g.states[0].Status] + "."
 	}
 	t += "A straight line between neighbours errs by at most"
 	for k, c := range tableColumns {
@@ -151,14 +156,15 @@ func (s *subject) cut(r *fluid.Record, g *grid, a, b expected, depth int) error 
 		}
 	}
 	worst := slices.Max(seen[:])
-	if (worst > tableSafety*s.o.Tolerance || edge) && depth < mostHalvings {
+	bent := worst > tableSafety*s.o.Tolerance
+	if bent && depth < mostHalvings || edge && depth < edgeHalvings {
 		m := inner[probes/2]
 		if err := s.cut(r, g, a, m, depth+1); err != nil {
 			return err
 		}
 		return s.cut(r, g, m, b, depth+1)
 	}
-	if worst > tableSafety*s.o.Tolerance && !edge {
+	if bent {
 		return &ToleranceError{r.Key, "table", fmt.Sprintf("the line still errs by %.3g K after %d halvings; allow more with a larger tolerance", worst, depth), a.P, b.P}
 	}
 	g.ends = g.ends || edge

@@ -2,6 +2,8 @@ package export
 
 import (
 	"fmt"
+	"slices"
+	"strings"
 
 	"limsup/data/fluid"
 	"limsup/fit"
@@ -67,11 +69,7 @@ func (s *subject) provenance() []string {
 	}
 	if s.model.Calibrated {
 		for _, r := range s.o.Records {
-			known := false
-			for _, k := range s.model.Validity.Fluids {
-				known = known || k == r.Key
-			}
-			if !known {
+			if !slices.Contains(s.model.Validity.Fluids, r.Key) {
 				out = append(out, "CAUTION: "+r.Key+" was not among the fluids of the calibration.")
 			}
 		}
@@ -81,23 +79,30 @@ func (s *subject) provenance() []string {
 
 // parameterTexts lists what was tuned and what was set.
 func (s *subject) parameterTexts() []string {
-	var out []string
+	var tuned, set []string
 	for i := range s.model.Parameters {
 		e := &s.model.Parameters[i]
-		t := fmt.Sprintf("Tuned: %s = %.6g%s", e.Label(), e.Value, after(" ", unit(e.Unit)))
+		t := fmt.Sprintf("%s = %.6g%s", e.Label(), e.Value, after(" ", unit(e.Unit)))
 		if e.HasU {
-			t += fmt.Sprintf(", standard uncertainty %.3g", e.U)
+			t += fmt.Sprintf(" (standard uncertainty %.3g)", e.U)
 		} else if e.Reason != "" {
-			t += ", no uncertainty: " + e.Reason
+			t += " (no uncertainty: " + e.Reason + ")"
 		}
-		out = append(out, t+".")
+		tuned = append(tuned, t)
 	}
 	for _, x := range s.model.Settings {
 		name := x.Name
 		if x.Group != "" {
 			name += "[" + x.Group + "]"
 		}
-		out = append(out, fmt.Sprintf("Set: %s = %s.", name, number(x.Value)))
+		set = append(set, name+" = "+number(x.Value))
+	}
+	var out []string
+	if len(tuned) > 0 {
+		out = append(out, "Tuned: "+strings.Join(tuned, "; ")+".")
+	}
+	if len(set) > 0 {
+		out = append(out, "Set: "+strings.Join(set, "; ")+".")
 	}
 	return out
 }
