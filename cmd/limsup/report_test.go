@@ -150,6 +150,9 @@ func TestReportOfModel(t *testing.T) {
 		t.Error("the same command gives another page")
 	}
 
+	if testing.Short() {
+		return // the rest tunes five more times
+	}
 	other := filepath.Join(dir, "more.csv")
 	text, err := os.ReadFile(demoData)
 	if err != nil {
