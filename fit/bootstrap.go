@@ -139,7 +139,7 @@ func (c *Calibration) replicate(o *BootstrapOptions, index int) Replicate {
 	}
 	var again *Calibration
 	if err == nil {
-		again, err = Calibrate(data, c.Plan, Options{Workers: 1, Warm: c, quick: true})
+		again, err = Calibrate(data, c.redrawPriors(o.Resample, rng), Options{Workers: 1, Warm: c, quick: true, redraw: rng, parametric: o.Resample == Parametric})
 	}
 	if err == nil && !again.Converged {
 		err = &ConvergenceError{c.Plan.Variant.Name(), again.Reason, nil}
@@ -261,6 +261,55 @@ func (c *Calibration) draw(rng *rand.Rand) ([]Observation, []float64, error) {
 		o.Start = lik.limit[i].T
 	}
 	return obs, theta, nil
+}
+
+// redrawPriors is the plan with new means of its priors, which are measurements like
+// any other: about the estimates if parametric, else about the means given.
+func (c *Calibration) redrawPriors(kind Resampling, rng *rand.Rand) Plan {
+	p := c.Plan
+	if len(p.Priors) == 0 {
+		return p
+	}
+	p.Priors = nil
+	for _, r := range c.Plan.Priors {
+		for i := range c.Parameters[:c.Locations] {
+			e := &c.Parameters[i]
+			if e.Name != r.Name || e.Role != RoleValue || r.Group != "" && r.Group != e.Group {
+				continue
+			}
+			one := Prior{Name: r.Name, Group: e.Group, Mean: r.Mean, Spread: r.Spread}
+			if kind == Parametric {
+				one.Mean = e.Value
+			}
+			one.Mean += r.Spread * rng.NormFloat64()
+			p.Priors = append(p.Priors, one)
+		}
+	}
+	return p
+}
+
+// redrawAnchors does the same to anchors.
+func (l *likelihood) redrawAnchors(rng *rand.Rand, at *Calibration, parametric bool) error {
+	if len(l.anchors) == 0 {
+		return nil
+	}
+	if parametric {
+		if err := l.evaluate(at.theta); err != nil {
+			return err
+		}
+	}
+	for k := range l.anchors {
+		a := &l.anchors[k]
+		if parametric {
+			r, _, err := a.residual(l.cells)
+			if err != nil {
+				return err
+			}
+			a.measured -= r * a.u
+		}
+		a.measured += a.u * rng.NormFloat64()
+	}
+	return nil
 }
 
 // Resampled summarises one quantity over the replicates.

@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"math/rand/v2"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -18,6 +19,10 @@ type Options struct {
 	Warm *Calibration
 
 	quick bool // values only: no uncertainties, rows or warnings
+	// redraw, if not nil, adds errors to anchors: about the equation of Warm if
+	// parametric, else about the correlations.
+	redraw     *rand.Rand
+	parametric bool
 }
 
 // Estimate is one estimated parameter.
@@ -135,6 +140,11 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 	lik, err := newLikelihood(&p, d.Observations, lay, o.Workers)
 	if err != nil {
 		return nil, err
+	}
+	if o.redraw != nil {
+		if err := lik.redrawAnchors(o.redraw, o.Warm, o.parametric); err != nil {
+			return nil, err
+		}
 	}
 	c := &Calibration{Plan: p, Data: d, Locations: len(lay.theta), References: lay.references}
 	first := leastsq.Settings{Starts: p.Restarts + 1, Seed: p.Seed, Local: true}

@@ -21,6 +21,9 @@ func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense) error {
 	p, k := len(c.theta), len(c.psi)
 	c.Degrees = max(1, len(lik.obs)-p)
 
+	if noise := lik.law(c.psi); noise.student {
+		lik.misfit = lik.misfitOf(&noise, variance, p)
+	}
 	curv := mat.NewSymDense(max(p, 1), nil)
 	value, err := lik.terms(c.theta, c.psi, variance, make([]float64, p), curv)
 	if err != nil {

@@ -12,9 +12,12 @@ import (
 // Identity says what the data tell apart.
 type Identity struct {
 	// Condition is the ratio of the largest to the smallest singular value of the
-	// weighted derivatives, each column scaled to length one. 1 is perfect; above
-	// 1e4 two parameters are one direction for practical purposes.
+	// weighted derivatives, each column scaled to length one. 1 is perfect.
 	Condition float64
+	// Inflation is the largest ratio of a standard uncertainty to the one that would be
+	// left if all other locations were known: the root of the variance inflation
+	// factor 1/(1−R²). Above 10 parameters are one direction for practical purposes.
+	Inflation float64
 	// SingularValues of the scaled derivatives in falling order.
 	SingularValues []float64
 	// Correlated pairs, |correlation| > 0.95, strongest first.
@@ -42,7 +45,9 @@ const (
 	// hopelessCondition is where the smallest eigenvalue of the scaled information,
 	// 1/condition², is lost in the rounding of the sums that form it.
 	hopelessCondition = 1e7
-	poorCondition     = 1e4
+	// poorInflation: beyond it 99 % of the effect of a parameter on the readings can be
+	// imitated by the others, and a usual data set says nothing about it alone.
+	poorInflation = 10
 )
 
 // identify studies the information matrix of the active parameters, scaled to a
@@ -81,8 +86,7 @@ func identify(h *mat.SymDense, active []int, l *layout, lik *likelihood) Identit
 	}
 	var eig mat.EigenSym
 	if !eig.Factorize(s, true) {
-		d.Reason = "the information matrix could not be decomposed"
-		d.Warnings = append(d.Warnings, d.Reason)
+		d.hopeless(labels(active, l), lik)
 		return d
 	}
 	values := eig.Values(nil)
@@ -94,15 +98,12 @@ func identify(h *mat.SymDense, active []int, l *layout, lik *likelihood) Identit
 	var vectors mat.Dense
 	eig.VectorsTo(&vectors)
 	if d.Condition > hopelessCondition {
-		names := direction(&vectors, active, l)
-		d.Reason = "the data do not tell apart " + join(names)
-		d.Warnings = append(d.Warnings, d.Reason+": they move every reading in the same proportion. "+advice(names, lik))
+		d.hopeless(direction(&vectors, active, l), lik)
 		return d
 	}
 	var chol mat.Cholesky
 	if !chol.Factorize(s) {
-		d.Reason = "the information matrix is not positive definite"
-		d.Warnings = append(d.Warnings, d.Reason)
+		d.hopeless(direction(&vectors, active, l), lik)
 		return d
 	}
 	d.cov = mat.NewSymDense(k, nil)
@@ -121,24 +122,46 @@ func identify(h *mat.SymDense, active []int, l *layout, lik *likelihood) Identit
 	sort.SliceStable(d.Correlated, func(i, j int) bool {
 		return math.Abs(d.Correlated[i].Value) > math.Abs(d.Correlated[j].Value)
 	})
+	worst := 0
+	for a := range k {
+		if f := math.Sqrt(d.cov.At(a, a)); f > d.Inflation {
+			d.Inflation, worst = f, a
+		}
+	}
 	for a := range k {
 		for b := a; b < k; b++ {
 			d.cov.SetSym(a, b, d.cov.At(a, b)/(scale[a]*scale[b]))
 		}
 	}
-	if d.Condition > poorCondition {
+	switch {
+	case d.Inflation > poorInflation:
 		names := direction(&vectors, active, l)
-		d.Warnings = append(d.Warnings, fmt.Sprintf("the data barely tell apart %s (condition %.1e). %s", join(names), d.Condition, advice(names, lik)))
-	} else if len(d.Correlated) > 0 {
+		d.Warnings = append(d.Warnings, fmt.Sprintf("in practice the data do not tell apart %s: were the others known, %s would be known %.0f times better. %s",
+			join(names), l.theta[active[worst]].Label(), d.Inflation, advice(names, lik)))
+	case len(d.Correlated) > 0:
 		c := d.Correlated[0]
 		more := ""
 		if n := len(d.Correlated) - 1; n > 0 {
 			more = fmt.Sprintf(" (and %d more pairs above %.2f)", n, strongCorrelation)
 		}
-		d.Warnings = append(d.Warnings, fmt.Sprintf("%s and %s are correlated by %.3f%s: their sum is known better than either. %s",
+		d.Warnings = append(d.Warnings, fmt.Sprintf("%s and %s are correlated by %.3f%s: a combination of them is known better than either. %s",
 			c.A, c.B, c.Value, more, advice([]string{c.A, c.B}, lik)))
 	}
 	return d
+}
+
+// hopeless records parameters that the data do not tell apart at all.
+func (d *Identity) hopeless(names []string, lik *likelihood) {
+	d.Reason = "the data do not tell apart " + join(names)
+	d.Warnings = append(d.Warnings, d.Reason+": they move every reading in the same proportion. "+advice(names, lik))
+}
+
+func labels(active []int, l *layout) []string {
+	var names []string
+	for _, i := range active {
+		names = append(names, l.theta[i].Label())
+	}
+	return names
 }
 
 // direction names the parameters that make up the weakest direction.
@@ -169,28 +192,61 @@ func join(names []string) string {
 	}
 }
 
-// advice says which measurement would separate parameters.
-func advice(labels []string, lik *likelihood) string {
+// variety is what the rows already vary.
+type variety struct{ flux, pressure, fluid, ownFlux bool }
+
+// Rows vary flux if their limits span two decades of it, pressure if they span two
+// bar.
+func varietyOf(lik *likelihood) variety {
+	var v variety
+	loJ, hiJ := math.Inf(1), math.Inf(-1)
+	loP, hiP := math.Inf(1), math.Inf(-1)
+	for i := range lik.obs {
+		o := &lik.obs[i]
+		loP, hiP = math.Min(loP, o.Pressure), math.Max(hiP, o.Pressure)
+		if l := &lik.limit[i]; !l.atSpinodal {
+			loJ, hiJ = math.Min(loJ, l.lnJ/math.Ln10), math.Max(hiJ, l.lnJ/math.Ln10)
+		}
+		v.ownFlux = v.ownFlux || o.OwnFlux
+		v.fluid = v.fluid || o.Record.Key != lik.obs[0].Record.Key
+	}
+	v.flux = hiJ-loJ > 2
+	v.pressure = hiP-loP > 2e5
+	return v
+}
+
+// advice says which measurement would separate parameters: of what would help, what
+// the rows do not vary yet.
+func advice(names []string, lik *likelihood) string {
 	has := map[string]bool{}
-	for _, s := range labels {
+	for _, s := range names {
 		name, _, _ := strings.Cut(s, "[")
 		has[name] = true
 	}
-	fluids, _ := groups(lik.obs, ByFluid)
+	v := varietyOf(lik)
 	flux := has[Threshold] || has[Prefactor]
+	equation := has[Slope] || has[Attraction] || has[Covolume]
+	var help []string
+	say := func(wanted bool, s string) {
+		if wanted {
+			help = append(help, s)
+		}
+	}
 	switch {
 	case has[Threshold] && has[Prefactor]:
 		return "Only rows with their own flux (droplet volume and heating rate, holding time, or lifetime) separate prefactor from threshold."
-	case flux && (has[SurfaceTension] || has[Tolman]):
-		return "A second flux (another droplet volume or a heating rate a hundred times different) or a second pressure would separate them; so would a prior on the surface tension."
-	case flux && (has[Slope] || has[Attraction] || has[Covolume]):
-		return "Another pressure, another fluid, or an anchor (vapour-pressure, liquid-density) would separate them."
-	case has[Slope] && has[Attraction] || has[Attraction] && has[Covolume] || has[Slope] && has[Covolume]:
-		return "An anchor (vapour-pressure, liquid-density) would separate them; so would limits over a wider range of pressure."
-	case has[Offset] && len(fluids) > 1:
-		return "Measuring one fluid at one pressure with both methods would separate them."
-	case has[SurfaceTension] && has[Tolman]:
-		return "Limits over a wider range of pressure would separate them."
+	case has[Offset] && !flux && !equation && !has[SurfaceTension]:
+		return "Measuring one fluid at one pressure in both groups would separate them."
 	}
-	return "Measurements at another flux, another pressure or on another fluid would separate them."
+	say(!v.flux && (flux || has[SurfaceTension] || has[Tolman]), "another flux (a droplet volume or a heating rate a hundred times different)")
+	say(!v.pressure, "another pressure")
+	say(!v.fluid && (flux || equation), "another fluid")
+	say(has[Offset] && flux, "one fluid at one pressure and flux in both groups")
+	say(equation, "an anchor (vapour-pressure, liquid-density)")
+	say(has[SurfaceTension] || has[Tolman], "a prior on the surface tension")
+	if len(help) == 0 {
+		return "More readings, over a wider range of flux and pressure, would separate them."
+	}
+	sentence := strings.Join(help, ", or ")
+	return strings.ToUpper(sentence[:1]) + sentence[1:] + " would separate them."
 }

@@ -22,6 +22,9 @@ type likelihood struct {
 	// As of the last hold: variance of each row from its stated uncertainties in K², and
 	// the steepness κ of the hazard of its sample in 1/K, 0 for rows without.
 	stated, steepness []float64
+
+	// misfit divides the information of Student rows, see misfitOf; 0 is 1.
+	misfit float64
 }
 
 func newLikelihood(p *Plan, obs []Observation, lay *layout, workers int) (*likelihood, error) {
@@ -91,7 +94,40 @@ func (l *likelihood) density(noise *law, i int, r, v float64) density {
 	if κ := l.steepness[i]; κ > 0 {
 		return boiling(r, v, κ, l.obs[i].Hazard, intact)
 	}
-	return noise.of(r, v, intact)
+	d := noise.of(r, v, intact)
+	if l.misfit > 0 {
+		d.irr /= l.misfit
+	}
+	return d
+}
+
+// misfitOf is the variance of robust estimates from the residuals themselves over the
+// one that Student's distribution with the ν at hand promises, for errors that are
+// symmetric but not Student's: with z = r/√v, ψ(z) = (ν+1)z/(ν+z²) and n rows,
+//
+//	[Σψ²/(n−p)]/[Σψ′/n]² · (ν+1)/(ν+3)
+//
+// (P. J. Huber, Robust Statistics, Wiley 1981, chapter 7; from memory). It is 1 on
+// average where the noise is as assumed.
+func (l *likelihood) misfitOf(noise *law, variance []float64, p int) float64 {
+	ν := noise.ν
+	var square, slope float64
+	n := 0
+	for i := range l.obs {
+		if l.obs[i].Outcome != 0 {
+			continue
+		}
+		r := l.residual(i)
+		q := r * r / variance[i]
+		square += (ν + 1) * (ν + 1) * q / ((ν + q) * (ν + q))
+		slope += (ν + 1) * (ν - q) / ((ν + q) * (ν + q))
+		n++
+	}
+	if n <= p || !(slope > 0) || !(square > 0) {
+		return 1
+	}
+	m := slope / float64(n)
+	return square / float64(n-p) / (m * m) * (ν + 1) / (ν + 3)
 }
 
 // addRow adds the derivatives of one row: slope is ∂nll/∂T_predicted, info the

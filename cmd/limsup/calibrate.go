@@ -24,7 +24,7 @@ func calibrateCommand() *cli.Command {
 		Description: "Prints the parameters with their uncertainties, the residuals, a cross-validation against the untuned model on the same folds with a verdict, and what tuning did to the rest of the equation. --out writes the calibrated model, which every command reads with --model.\n\n" +
 			"Examples: limsup calibrate --data drops.csv --out lab.json\n" +
 			"          limsup calibrate --data drops.csv --tune threshold --tune slope/fluid --anchor vapour-pressure=1%",
-		Flags: flags([]cli.Flag{dataFlag()}, tuneFlags(), []cli.Flag{
+		Flags: flags([]cli.Flag{dataFlag()}, tuneFlags(), intervalFlags(), []cli.Flag{
 			&cli.StringFlag{Name: "folds", Usage: "what cross-validation leaves out at a time: `KIND` rows, fluid, method, batch, pressure, a number of parts, or none (default: fluid, or rows with one fluid)"},
 			&cli.BoolFlag{Name: "rows", Usage: "print the residual of every row"},
 		}, variantFlags(), []cli.Flag{formatFlag(), seedFlag(), outFlag("the model")}),
@@ -49,6 +49,9 @@ func calibrateCommand() *cli.Command {
 				return err
 			}
 			tell(c, "search: %d evaluations of all rows; %s", r.Evaluations, r.Reason)
+			if r.intervals, err = intervalsFromFlags(c, r.Calibration); err != nil {
+				return err
+			}
 			if name := c.String("out"); name != "" {
 				if err := r.writeModel(name, c.Uint64("seed")); err != nil {
 					return err
@@ -71,6 +74,8 @@ type calibration struct {
 	cv      *validate.CrossValidation
 	noCV    string // why there is no cross-validation
 	effects []fit.SideEffect
+
+	intervals *intervals // nil unless asked for
 }
 
 // writeModel writes the model file.
@@ -89,6 +94,9 @@ type parameterJSON struct {
 	Role    fit.Role `json:"role"`
 	Value   float64  `json:"value"`
 	U       *float64 `json:"standard_uncertainty"`
+	Low     *float64 `json:"interval_95_low"`
+	High    *float64 `json:"interval_95_high"`
+	Degrees float64  `json:"degrees_of_freedom,omitempty"`
 	Reason  string   `json:"reason,omitempty"`
 	Unit    string   `json:"unit"`
 	AtBound bool     `json:"at_bound"`
@@ -107,6 +115,7 @@ type cvJSON struct {
 
 type identityJSON struct {
 	Condition      float64           `json:"condition"`
+	Inflation      float64           `json:"uncertainty_inflation"`
 	SingularValues []float64         `json:"singular_values"`
 	Correlations   []correlationJSON `json:"correlations"`
 	Warnings       []string          `json:"warnings"`
@@ -151,6 +160,8 @@ type calibrationJSON struct {
 	Verdict      validate.Verdict    `json:"verdict"`
 	VerdictText  string              `json:"verdict_reason"`
 	Identity     identityJSON        `json:"identifiability"`
+	Profiles     []rangeJSON         `json:"profile_intervals,omitempty"`
+	Bootstrap    *bootstrapJSON      `json:"bootstrap,omitempty"`
 	SideEffects  []sideEffectJSON    `json:"side_effects"`
 	References   map[string]string   `json:"reference_groups,omitempty"`
 	Converged    bool                `json:"converged"`
@@ -173,6 +184,10 @@ type calibratedRowJSON struct {
 	Residual     float64 `json:"residual_K"`
 	Standardised float64 `json:"standardised"`
 	Leverage     float64 `json:"leverage"`
+	Cook         float64 `json:"cook_distance"`
+	Dffits       float64 `json:"dffits"`
+	Shift        float64 `json:"largest_shift"` // of an estimate without the row, in its standard uncertainties
+	ShiftOf      string  `json:"largest_shift_of,omitempty"`
 	Log10Flux    float64 `json:"log10_flux"`
 	Intact       bool    `json:"intact,omitempty"`
 }
@@ -195,6 +210,7 @@ func (r *calibration) product(out string, rows bool) *product {
 	for _, w := range r.Warnings {
 		p.blocks = append(p.blocks, block{text: "Warning: " + w})
 	}
+	p.blocks = append(p.blocks, r.intervals.blocks()...)
 	if r.cv != nil {
 		p.blocks = append(p.blocks, block{table: r.cvTable()})
 	}

@@ -84,8 +84,9 @@ func (r *calibration) json() *calibrationJSON {
 		RMSE: r.RMSE, Bias: r.Bias, Spread: r.Spread, LogLik: r.LogLik, Degrees: r.Degrees, NoCV: r.noCV,
 		Verdict: validate.NoGain, VerdictText: r.noCV, References: r.References,
 		Converged: r.Converged, Usable: r.Usable, Reason: r.Reason, Warnings: append([]string{}, r.Warnings...),
-		Identity: identityJSON{Condition: r.Identity.Condition, SingularValues: append([]float64{}, r.Identity.SingularValues...),
+		Identity: identityJSON{Condition: r.Identity.Condition, Inflation: r.Identity.Inflation, SingularValues: append([]float64{}, r.Identity.SingularValues...),
 			Correlations: []correlationJSON{}, Warnings: append([]string{}, r.Identity.Warnings...)},
+		Profiles: r.intervals.profileJSON(), Bootstrap: r.intervals.bootstrapJSON(),
 		SideEffects: []sideEffectJSON{}, Residuals: []calibratedRowJSON{}, Cautions: caution.Sentences(),
 	}
 	for _, x := range r.Identity.Correlated {
@@ -96,7 +97,9 @@ func (r *calibration) json() *calibrationJSON {
 	}
 	for i := range r.Parameters {
 		e := &r.Parameters[i]
+		lo, hi, ok := e.Interval(0.95)
 		j.Parameters = append(j.Parameters, parameterJSON{Name: e.Name, By: e.By, Group: e.Group, Role: e.Role, Value: e.Value, U: optional(e.U, e.HasU),
+			Low: optional(lo, ok), High: optional(hi, ok), Degrees: e.Degrees,
 			Reason: e.Reason, Unit: e.Unit, AtBound: e.AtBound != "", Start: e.Start, Lower: e.Lower, Upper: e.Upper})
 	}
 	if r.cv != nil {
@@ -113,8 +116,12 @@ func (r *calibration) json() *calibrationJSON {
 	}
 	for _, x := range r.Rows {
 		o := &r.Data.Observations[x.Index]
+		shiftOf := ""
+		if k := x.Influence.Of; k >= 0 {
+			shiftOf = r.Parameters[k].Label()
+		}
 		j.Residuals = append(j.Residuals, calibratedRowJSON{o.File, o.Line, o.Record.Key, o.Method, o.Batch, o.Pressure, o.Temperature, x.Predicted,
-			x.Residual, x.Standardised, x.Leverage, x.Log10Flux, o.Outcome != 0})
+			x.Residual, x.Standardised, x.Leverage, x.Influence.Cook, x.Influence.Dffits, x.Influence.Shift, shiftOf, x.Log10Flux, o.Outcome != 0})
 	}
 	return j
 }

@@ -82,17 +82,33 @@ func sweepFlags(of string) []cli.Flag {
 func flags(groups ...[]cli.Flag) []cli.Flag { return slices.Concat(groups...) }
 
 // variantFromFlags reads the variant.
-func variantFromFlags(c *cli.Context) (fit.Variant, error) {
+func variantFromFlags(c *cli.Context) (fit.Variant, error) { return variantOver(c, fit.Variant{}) }
+
+// variantOver is the base, as a plan file gives it, with the flags over it.
+func variantOver(c *cli.Context, base fit.Variant) (fit.Variant, error) {
 	v := fit.Variant{
 		Equation: c.String("equation"), Limit: fit.Limit(c.String("limit")), Tension: fit.Tension(c.String("surface-tension")),
 		Properties: nucleation.Properties(c.String("properties")), EmbryoPressure: nucleation.EmbryoPressure(c.String("embryo-pressure")),
 		Kinetics: nucleation.Kinetics(c.String("kinetics")),
 	}
+	over(&v.Equation, base.Equation)
+	over(&v.Limit, base.Limit)
+	over(&v.Tension, base.Tension)
+	over(&v.Properties, base.Properties)
+	over(&v.EmbryoPressure, base.EmbryoPressure)
+	over(&v.Kinetics, base.Kinetics)
 	v, err := v.Complete()
 	if e, ok := err.(*eos.UnknownEquationError); ok {
 		return v, &usageError{fmt.Sprintf("%s: --equation %q%s; the equations are %s", commandName(c), e.Name, suggest("", quantity.Near(e.Name, e.Known)), strings.Join(e.Known, ", "))}
 	}
 	return v, err
+}
+
+// over fills what no flag gives.
+func over[T ~string](flag *T, base T) {
+	if *flag == "" {
+		*flag = base
+	}
 }
 
 // parseSetting reads NAME=VALUE or NAME[GROUP]=VALUE.

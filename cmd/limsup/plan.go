@@ -2,6 +2,8 @@ package main
 
 import (
 	"fmt"
+	"os"
+	"slices"
 	"strconv"
 	"strings"
 
@@ -9,18 +11,20 @@ import (
 
 	"limsup/data/quantity"
 	"limsup/fit"
+	"limsup/fit/planfile"
 )
 
 // tuneFlags say what a calibration frees, fixes and knows beforehand.
 func tuneFlags() []cli.Flag {
 	return []cli.Flag{
+		&cli.StringFlag{Name: "plan", Usage: "TOML `FILE` with model, noise, parameters, bounds, priors and anchors (see the package fit/planfile); flags take precedence over it"},
 		&cli.StringSliceFlag{Name: "tune", Usage: "free a parameter, `NAME`, NAME/fluid, NAME/method or NAME/batch, the last three optionally with /pooled (repeatable; default: threshold, or prefactor where every row has its own flux). Names: threshold, prefactor, attraction, covolume, slope, surface-tension, tolman, offset, spread"},
 		&cli.StringSliceFlag{Name: "fix", Usage: "hold a parameter, `NAME=VALUE`, e.g. spread=0 (repeatable)"},
 		&cli.StringSliceFlag{Name: "start", Usage: "start value, `NAME=VALUE` or NAME[GROUP]=VALUE (repeatable)"},
 		&cli.StringSliceFlag{Name: "bounds", Usage: "bounds of a parameter, `NAME=LOW..HIGH` (repeatable)"},
 		&cli.StringSliceFlag{Name: "prior", Usage: "normal prior, `NAME=MEAN+-SD` or NAME[GROUP]=MEAN+-SD (repeatable)"},
 		&cli.StringSliceFlag{Name: "anchor", Usage: "hold the equation to the fluid's own correlation, `PROPERTY=U` with U its relative standard uncertainty, e.g. vapour-pressure=1% or liquid-density=2% (repeatable)"},
-		&cli.StringFlag{Name: "noise", Usage: "`DISTRIBUTION` of the residuals: gaussian, student or student=DEGREES, survival (default: gaussian)"},
+		&cli.StringFlag{Name: "noise", Usage: "`DISTRIBUTION` of the residuals: gaussian; student, student=DEGREES or student=estimate; survival (default: gaussian)"},
 		&cli.IntFlag{Name: "restarts", Usage: "`NUMBER` of further starts of the search, spread over the bounds"},
 	}
 }
@@ -28,9 +32,11 @@ func tuneFlags() []cli.Flag {
 // planFromFlags reads the plan of a calibration. Commands without tuneFlags get
 // the default plan of their variant.
 func planFromFlags(c *cli.Context) (fit.Plan, error) {
-	var p fit.Plan
-	var err error
-	if p.Variant, err = variantFromFlags(c); err != nil {
+	p, hasSeed, err := planFile(c)
+	if err != nil {
+		return p, err
+	}
+	if p.Variant, err = variantOver(c, p.Variant); err != nil {
 		return p, err
 	}
 	for _, s := range c.StringSlice("tune") {
@@ -38,6 +44,7 @@ func planFromFlags(c *cli.Context) (fit.Plan, error) {
 		if err != nil {
 			return p, err
 		}
+		drop(&p, t.Name)
 		p.Terms = append(p.Terms, t)
 	}
 	set, err := settings(c, "set")
@@ -56,7 +63,10 @@ func planFromFlags(c *cli.Context) (fit.Plan, error) {
 	if err != nil {
 		return p, err
 	}
-	p.Fixed = append(p.Fixed, fixed...)
+	for _, s := range fixed {
+		drop(&p, s.Name)
+		p.Fixed = append(p.Fixed, s)
+	}
 	starts, err := settings(c, "start")
 	if err != nil {
 		return p, err
@@ -67,13 +77,14 @@ func planFromFlags(c *cli.Context) (fit.Plan, error) {
 		if err != nil {
 			return p, err
 		}
-		p.Bounds = append(p.Bounds, b)
+		p.Bounds = append(p.Bounds, b) // the last of a parameter holds
 	}
 	for _, s := range c.StringSlice("prior") {
 		r, err := parsePrior(s)
 		if err != nil {
 			return p, err
 		}
+		p.Priors = slices.DeleteFunc(p.Priors, func(old fit.Prior) bool { return old.Name == r.Name && old.Group == r.Group })
 		p.Priors = append(p.Priors, r)
 	}
 	for _, s := range c.StringSlice("anchor") {
@@ -81,16 +92,48 @@ func planFromFlags(c *cli.Context) (fit.Plan, error) {
 		if err != nil {
 			return p, err
 		}
+		p.Anchors = slices.DeleteFunc(p.Anchors, func(old fit.Anchor) bool { return old.Property == a.Property })
 		p.Anchors = append(p.Anchors, a)
 	}
-	if p.Noise, err = parseNoise(c.String("noise")); err != nil {
-		return p, err
+	if s := c.String("noise"); s != "" {
+		if p.Noise, err = parseNoise(s); err != nil {
+			return p, err
+		}
 	}
-	p.Restarts, p.Seed = c.Int("restarts"), c.Uint64("seed")
+	if c.IsSet("restarts") {
+		p.Restarts = c.Int("restarts")
+	}
+	if c.IsSet("seed") || !hasSeed {
+		p.Seed = c.Uint64("seed")
+	}
 	if p.Restarts < 0 || p.Restarts > 10000 {
 		return p, &usageError{fmt.Sprintf("--restarts %d: want 0 to 10000", p.Restarts)}
 	}
 	return p, nil
+}
+
+// drop removes what a plan file says of tuning or holding a parameter.
+func drop(p *fit.Plan, name string) {
+	p.Terms = slices.DeleteFunc(p.Terms, func(t fit.Term) bool { return t.Name == name })
+	p.Fixed = slices.DeleteFunc(p.Fixed, func(s fit.Setting) bool { return s.Name == name })
+}
+
+// planFile reads the plan file, if there is one.
+func planFile(c *cli.Context) (p fit.Plan, hasSeed bool, err error) {
+	name := c.String("plan")
+	if name == "" {
+		return p, false, nil
+	}
+	f, err := os.Open(name)
+	if err != nil {
+		return p, false, err
+	}
+	defer f.Close()
+	p, hasSeed, err = planfile.Read(f, name)
+	if e, ok := err.(planfile.Problems); ok {
+		err = &usageError{e.Error()}
+	}
+	return p, hasSeed, err
 }
 
 func tuned(terms []fit.Term, name string) bool {
@@ -157,9 +200,13 @@ func parseNoise(s string) (fit.Noise, error) {
 	if !given {
 		return n, nil
 	}
+	if degrees == "estimate" && n.Kind == fit.Student {
+		n.Estimate = true
+		return n, nil
+	}
 	v, err := strconv.ParseFloat(degrees, 64)
 	if err != nil || n.Kind != fit.Student {
-		return n, &usageError{fmt.Sprintf("--noise %q: want gaussian, student, student=DEGREES or survival", s)}
+		return n, &usageError{fmt.Sprintf("--noise %q: want gaussian, student, student=DEGREES, student=estimate or survival", s)}
 	}
 	n.Degrees = v
 	return n, nil
