@@ -86,7 +86,9 @@ func (d *campaignDesign) facts() table.Facts {
 	if times, ok := d.Worth(); ok && d.alone() {
 		f = append(f, table.Fact{Label: "worth", Value: fmt.Sprintf("as much new information as %.3g evenly spaced measurements", times*float64(d.N))})
 	}
-	f = append(f, table.Fact{Label: "no batch of as many", Value: fmt.Sprintf("leaves less than %.1f %% of the uncertainty that this one leaves", 100*(1-d.Slack))})
+	if d.Slack < 0.5 { // else the bound says nothing
+		f = append(f, table.Fact{Label: "no batch of as many", Value: fmt.Sprintf("leaves less than %.1f %% of the uncertainty that this one leaves", 100*(1-d.Slack))})
+	}
 	if t := d.Tell; t != nil {
 		return append(f,
 			table.Fact{Label: "power now", Value: fmt.Sprintf("%s at 95 %%, if the model is true", chance(t.PowerBefore))},
@@ -154,9 +156,8 @@ func (d *campaignDesign) singleTable(top int) *table.Table {
 		table.Column{Name: "gain", Title: "gain", Unit: "%", Kind: table.KindNumber, Digits: 2, Fixed: true},
 		table.Column{Name: "repeats", Title: "repeats", Kind: table.KindText},
 		table.Column{Name: "uncertainty_repeated", Title: "u then", Kind: table.KindNumber, Digits: 3, Priority: 4})...)}
-	if c := &t.Columns[len(t.Columns)-1]; !d.alone() {
-		c.Unit, c.Digits, c.Fixed = "%", 1, true
-	}
+	then := &t.Columns[len(t.Columns)-1]
+	then.Unit, then.Digits, then.Fixed = d.afterColumn().Unit, d.afterColumn().Digits, d.afterColumn().Fixed
 	for i := range d.Singles[:n] {
 		s := &d.Singles[i]
 		repeats, then := table.Missing(""), table.Missing("")

@@ -293,4 +293,10 @@ func quantityText(v float64, unit string) string {
 
 func percent(x float64) string { return fmt.Sprintf("%.2g %%", 100*x) }
 
-func capital(s string) string { return strings.ToUpper(s[:1]) + s[1:] }
+// capital begins a sentence; the names of fluids keep their small letters.
+func capital(s string) string {
+	if strings.HasPrefix(s, "a ") || strings.HasPrefix(s, "another ") {
+		return "A" + s[1:]
+	}
+	return s
+}

@@ -3,6 +3,7 @@ package campaign
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"limsup/fit"
 	"limsup/fit/design"
@@ -117,14 +118,13 @@ func Make(in Input) (*Plan, error) {
 	}
 	s := newSpace(in.Model, in.Calibration, in.Fresh)
 	p.space = s
-	for i := range p.Readings {
-		s.reach(&p.Readings[i].sensitivity)
-	}
 	for i := range in.Target.Limits {
-		x, err := in.Model.Sensitivity(in.Target.Limits[i].query())
-		if err == nil {
-			s.reach(&x)
+		if x, err := in.Model.Sensitivity(in.Target.Limits[i].query()); err == nil { // else quantities reports it
+			s.reach(&x, true)
 		}
+	}
+	for i := range p.Readings {
+		s.reach(&p.Readings[i].sensitivity, false)
 	}
 	quantities, criterion, err := in.Target.quantities(s)
 	if err != nil {
@@ -149,7 +149,7 @@ func Make(in Input) (*Plan, error) {
 	}
 	p.Parameters, p.Notes = s.params, append(p.Notes, s.notes...)
 	for i := range p.Parameters {
-		if x := &p.Parameters[i]; x.Assumed && !x.Spread && x.After > leaning*x.Before {
+		if x := &p.Parameters[i]; x.Assumed && !x.Spread && x.diffuse == 0 && x.After > leaning*x.Before {
 			p.Notes = append(p.Notes, fmt.Sprintf("%s: after the batch its uncertainty still leans on its bounds, so that the promises are too good; measure more, or set a prior", x.Label))
 		}
 	}
@@ -162,6 +162,7 @@ const leaning = 0.316
 
 // readings predicts every candidate; those that the model cannot predict are listed.
 func (p *Plan) readings() error {
+	var bare []string // methods without a stated uncertainty
 	for _, c := range p.Candidates {
 		x, err := p.Model.Sensitivity(c.Query())
 		if err != nil {
@@ -193,6 +194,10 @@ func (p *Plan) readings() error {
 			}
 			r.Difference = y.Temperature - x.Temperature
 		}
+		if c.UTemperature == 0 && !slices.Contains(bare, c.Method) {
+			bare = append(bare, c.Method)
+			p.Notes = append(p.Notes, fmt.Sprintf("no uncertainty is stated for readings by %s, which are taken to scatter by the spread of the model alone", orUnnamed(c.Method)))
+		}
 		p.Readings = append(p.Readings, r)
 	}
 	if len(p.Readings) == 0 {
@@ -203,6 +208,13 @@ func (p *Plan) readings() error {
 		return &InputError{"candidates", "at least one that the model can predict" + reason}
 	}
 	return nil
+}
+
+func orUnnamed(method string) string {
+	if method == "" {
+		return "the method without a name"
+	}
+	return method
 }
 
 // problem is the choice in the space of the model.
@@ -279,6 +291,9 @@ func (p *Plan) uncertainties(own *design.Problem) error {
 	for i := range p.space.params {
 		x := &p.space.params[i]
 		x.Before, x.After = math.Sqrt(of[0].Covariance.At(i, i)), math.Sqrt(of[1].Covariance.At(i, i))
+		if x.diffuse > 0 {
+			x.Before, x.After = math.Min(x.Before, x.diffuse), math.Min(x.After, x.diffuse)
+		}
 	}
 	for i := range p.Quantities {
 		x := &p.Quantities[i]

@@ -18,6 +18,8 @@ type Parameter struct {
 	// Assumed is set where no more than the bounds is known before.
 	Assumed       bool
 	Before, After float64 // standard uncertainty before and after the batch
+
+	diffuse float64 // the standard deviation of the bounds, where not even they are used
 }
 
 // space is the vector of parameters with what is known of it: those of a model,
@@ -197,8 +199,14 @@ func (s *space) link(k, mean int, τ float64) {
 	s.entries = append(s.entries, entry{k, k, w}, entry{mean, mean, w}, entry{min(k, mean), max(k, mean), -w})
 }
 
-// reach makes room for the groups without rows on which a limit depends.
-func (s *space) reach(x *fit.Sensitivity) {
+// diffuse is how many times wider than its bounds the value of a group without rows is
+// taken to be where it is not itself of interest: a reading there then finds that value
+// and lends nothing to the others, which the bounds alone would make it do.
+const diffuse = 1000
+
+// reach makes room for the groups without rows on which a limit depends. wanted
+// is set for limits of the target.
+func (s *space) reach(x *fit.Sensitivity, wanted bool) {
 	for i := range x.Effects {
 		e := &x.Effects[i]
 		if _, known := s.extra[e.Label]; e.At >= 0 || known {
@@ -212,6 +220,10 @@ func (s *space) reach(x *fit.Sensitivity) {
 			continue
 		}
 		s.bound(k, e.Lower, e.Upper)
+		if !wanted {
+			s.params[k].diffuse = (e.Upper - e.Lower) / math.Sqrt(12)
+			s.entries[len(s.entries)-1].v /= diffuse * diffuse
+		}
 		s.notes = append(s.notes, fmt.Sprintf("%s was never measured: it starts with no more than its bounds, and the first measurements there only find it", e.Label))
 	}
 }

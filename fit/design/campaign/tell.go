@@ -50,7 +50,7 @@ func (p *Plan) tellProblem() (*design.Problem, error) {
 		if err != nil {
 			return nil, err
 		}
-		s.reach(&x)
+		s.reach(&x, false)
 		sensitivities[i] = x
 	}
 	n := len(s.params)
@@ -83,9 +83,9 @@ func (p *Plan) tellProblem() (*design.Problem, error) {
 // respect to κ and, mixed, to the locations of the rival.
 func (p *Plan) tellBefore(q *design.Problem, s *space) error {
 	m := q.Prior
-	// κ is a share: without any measurement it is known to lie about 0 to 1, which
-	// counts as a standard deviation of 1 and keeps the first step well posed.
-	m.SetSym(0, 0, 1)
+	// Next to nothing is known of κ before any measurement: a standard deviation of a
+	// thousand shares keeps the first step well posed and no more.
+	m.SetSym(0, 0, 1e-6)
 	rival := p.Target.Rival
 	c := rival.Calibration
 	if p.Fresh || p.Data == nil || c == nil {
