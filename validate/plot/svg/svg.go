@@ -60,16 +60,16 @@ func Panel(f *plot.Figure, i int) (string, error) {
 	w.x, w.y = p.Scales()
 	height := Height
 	w.x0, w.x1, w.y0, w.y1 = left, Width-right, Height-bottom, top
-	if len(p.Y.Categories) > 0 {
-		longest := 0.0
-		for _, c := range p.Y.Categories {
-			longest = max(longest, textWidth(c))
-		}
-		widest := 170.0
-		if p.Matrix != nil {
-			widest = 200
-		}
-		w.x0 = min(widest, max(left, 14+longest))
+	longest := 0.0
+	for _, t := range w.y.Ticks {
+		longest = max(longest, textWidth(t.Label))
+	}
+	w.x0 = max(left, 14+longest)
+	switch { // names may be cut, numbers never
+	case p.Matrix != nil:
+		w.x0 = min(w.x0, 200)
+	case len(p.Y.Categories) > 0:
+		w.x0 = min(w.x0, 170)
 	}
 	if n := len(p.Y.Categories); p.Matrix != nil && n > 0 {
 		side := (w.x1 - w.x0) / float64(n)
@@ -202,7 +202,11 @@ func (w *writer) axes(p *plot.Panel) {
 			fmt.Fprintf(&ticks, "M%s %sh-%s", num(w.x0), num(y), num(length))
 		}
 		if t.Label != "" {
-			w.printf(`<text class="tick" x="%s" y="%s" text-anchor="end">%s</text>`, num(w.x0-7), num(y+4), html.EscapeString(shorten(t.Label, w.x0-10)))
+			label := t.Label
+			if len(p.Y.Categories) > 0 {
+				label = shorten(label, w.x0-10)
+			}
+			w.printf(`<text class="tick" x="%s" y="%s" text-anchor="end">%s</text>`, num(w.x0-7), num(y+4), html.EscapeString(label))
 		}
 	}
 	if p.Matrix == nil {
