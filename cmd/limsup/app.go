@@ -52,7 +52,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Action:                    noCommand,
 		CommandNotFound:           nil,
 		Commands: []*cli.Command{
-			checkCommand(), calibrateCommand(), validateCommand(), compareCommand(), predictCommand(),
+			checkCommand(), calibrateCommand(), validateCommand(), compareCommand(), predictCommand(), exportCommand(),
 			fluidsCommand(), isothermCommand(), embryoCommand(), fluxCommand(), shareCommand(), gatherCommand(), plotCommand(), reportCommand(),
 			helpCommand(), manCommand(), completionCommand(),
 		},

@@ -15,6 +15,7 @@ import (
 	"limsup/eos/nucleation"
 	"limsup/eos/tension"
 	"limsup/fit"
+	"limsup/fit/export"
 	"limsup/fit/modelfile"
 	"limsup/validate"
 	"limsup/validate/share"
@@ -55,8 +56,11 @@ func status(err error) int {
 		is[*tension.RangeError](err), is[*fit.OptionError](err), is[*fit.TooFewError](err), is[*fit.UnavailableError](err),
 		is[*eos.DomainError](err), is[*eos.ParameterError](err), is[*eos.UnknownEquationError](err),
 		is[*share.ShareError](err), is[*share.FormatError](err), is[share.Problems](err), is[*validate.ResultError](err), is[*engine.TaskError](err),
+		is[*export.OptionError](err), is[*export.UnsupportedError](err),
 		is[*atomicfile.WriteError](err), is[*fs.PathError](err):
 		return statusInput
+	case is[*export.ToleranceError](err):
+		return statusNoAnswer
 	case is[*fit.RowError](err), is[*validate.FoldError](err):
 		return statusNoAnswer
 	}
