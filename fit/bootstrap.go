@@ -139,7 +139,7 @@ func (c *Calibration) replicate(o *BootstrapOptions, index int) Replicate {
 	}
 	var again *Calibration
 	if err == nil {
-		again, err = Calibrate(data, c.redrawPriors(o.Resample, rng), Options{Workers: 1, Warm: c, quick: true, redraw: rng, parametric: o.Resample == Parametric})
+		again, err = Calibrate(data, c.redrawPriors(o.Resample, data.Observations, rng), Options{Workers: 1, Warm: c, quick: true, redraw: rng, parametric: o.Resample == Parametric})
 	}
 	if err == nil && !again.Converged {
 		err = &ConvergenceError{c.Plan.Variant.Name(), again.Reason, nil}
@@ -265,7 +265,7 @@ func (c *Calibration) draw(rng *rand.Rand) ([]Observation, []float64, error) {
 
 // redrawPriors is the plan with new means of its priors, which are measurements like
 // any other: about the estimates if parametric, else about the means given.
-func (c *Calibration) redrawPriors(kind Resampling, rng *rand.Rand) Plan {
+func (c *Calibration) redrawPriors(kind Resampling, obs []Observation, rng *rand.Rand) Plan {
 	p := c.Plan
 	if len(p.Priors) == 0 {
 		return p
@@ -276,6 +276,9 @@ func (c *Calibration) redrawPriors(kind Resampling, rng *rand.Rand) Plan {
 			e := &c.Parameters[i]
 			if e.Name != r.Name || e.Role != RoleValue || r.Group != "" && r.Group != e.Group {
 				continue
+			}
+			if e.Group != "" && !slices.ContainsFunc(obs, func(o Observation) bool { return groupOf(e.By, &o.Row) == e.Group }) {
+				continue // not drawn
 			}
 			one := Prior{Name: r.Name, Group: e.Group, Mean: r.Mean, Spread: r.Spread}
 			if kind == Parametric {

@@ -264,6 +264,10 @@ func (c *checker) parameter(p *fit.Plan, i int, q *parameter, seen map[string]bo
 	at := func(key string) int { return c.line("parameter", i, key) }
 	first := *groups
 	*groups += len(q.Group)
+	if q.Pooled && q.By == "" {
+		c.add(at("pooled"), "%s: pooled needs by", q.Name)
+		return
+	}
 	term := q.Name
 	if q.By != "" {
 		term += "/" + q.By
@@ -284,9 +288,6 @@ func (c *checker) parameter(p *fit.Plan, i int, q *parameter, seen map[string]bo
 		return
 	}
 	seen[q.Name] = true
-	if q.Pooled && q.By == "" {
-		c.add(at("pooled"), "%s: pooled needs by", q.Name)
-	}
 	tune := q.Value == nil
 	if q.Tune != nil {
 		tune = *q.Tune
@@ -306,6 +307,9 @@ func (c *checker) parameter(p *fit.Plan, i int, q *parameter, seen map[string]bo
 	}
 	if (q.Lower == nil) != (q.Upper == nil) {
 		c.add(at("lower"), "%s: want both bounds or none", q.Name)
+	} else if q.Lower != nil && !(*q.Lower < *q.Upper) {
+		c.add(at("lower"), "%s: want lower below upper", q.Name)
+		return
 	} else if q.Lower != nil {
 		one.Bounds = []fit.Bound{{Name: q.Name, Lower: *q.Lower, Upper: *q.Upper}}
 	}
