@@ -21,7 +21,7 @@ func designCommand() *cli.Command {
 		Description: "Ranks single next measurements and chooses a batch from what the laboratory can do, says what uncertainty each leaves and why, and how large the samples' stored energy is. Without a target all parameters are narrowed together (D-optimal); --narrow and --narrow-limit narrow what they name (c-, I- or D-optimal); --tell-apart finds where a rival variant would be caught.\n\n" +
 			"The candidates are the fluids, pressures and methods of the data unless flags or --candidates give others. A file of candidates is TOML: fluid and pressure lists, then one [[setup]] per way to measure, with method, diameter or volume, heating_rate or holding_time, u_temperature, u_pressure, most, and fluid and pressure lists of its own.\n\n" +
 			"Examples: limsup plan --data drops.csv --tune prefactor --tune surface-tension --narrow surface-tension\n" +
-			"          limsup plan --data drops.csv --model lab.json --narrow-limit \"n-pentane@0.5 MPa\" --batch 6 --check 200\n" +
+			"          limsup plan --data drops.csv --model lab.json --narrow-limit \"n-pentane@0.5 MPa\" --batch 6 --check 40\n" +
 			"          limsup plan --data drops.csv --tell-apart peng-robinson --candidates can-do.toml",
 		Flags: flags([]cli.Flag{dataFlag(),
 			&cli.StringSliceFlag{Name: "narrow", Usage: "target: the uncertainty of a tuned `PARAMETER`, NAME or NAME[GROUP]; several are narrowed together (repeatable)"},
