@@ -286,6 +286,7 @@ func (m *Model) Predict(q Query) (Prediction, error) {
 	}
 	out.SaturationT, out.HasSaturation = ph.saturationTemperature(out.Pressure)
 	m.compareRange(&out, &q, &found)
+	out.doubt(q.Record)
 	return out, nil
 }
 
