@@ -9,6 +9,7 @@ import (
 // Limits of what passes without a Warning; facts of trade (common practice), not of physics.
 const (
 	coldest        = 150    // K; below it only cryogenic liquids boil
+	coldestReduced = 0.7    // of the upper end of the liquid range; limits at positive pressure lie at 0.8 to 1
 	largestDrop    = 20e-3  // m, diameter
 	smallestDrop   = 1e-6   // m, diameter
 	fastestDroplet = 1e4    // K/s, in a column of host liquid
@@ -59,6 +60,13 @@ func (a *assembler) judgeTemperature(r *Row, warn func(kind, format string, args
 		return
 	}
 	if T >= low && T <= high {
+		if cold := coldestReduced * high; T < cold && r.Pressure > 0 {
+			if unit == "K" && T+iceKelvin >= cold && T+iceKelvin <= high {
+				warn("celsius "+r.Key, "%.6g K is below 0.7 of the upper end of the liquid range (%.6g K); is the column in Cel?", T, high)
+			} else {
+				warn("cool "+r.Key, "%.6g K is below 0.7 of the upper end of the liquid range (%.6g K), colder than superheat limits are known", T, high)
+			}
+		}
 		return
 	}
 	inside := func(x float64) bool { return x >= low && x <= high }
