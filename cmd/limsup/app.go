@@ -31,6 +31,9 @@ func run(ctx context.Context, stdout, stderr io.Writer, args []string) error {
 	case line.command == "":
 		return &usageError{"no command (limsup help lists them)"}
 	}
+	if err := once(app, line); err != nil {
+		return err
+	}
 	return app.RunContext(ctx, append([]string{args[0]}, line.ordered()...))
 }
 

@@ -160,6 +160,7 @@ func library(c *cli.Context) (*fluid.Library, error) {
 		if err != nil {
 			return nil, err
 		}
+		warnRecords(c, records)
 		lib = lib.With(records...)
 	}
 	return lib, nil

@@ -117,7 +117,7 @@ type branchJSON struct {
 type pointJSON struct {
 	Volume            float64   `json:"volume_m3_mol"`
 	Pressure          float64   `json:"pressure_Pa"`
-	ChemicalPotential float64   `json:"chemical_potential_J_mol"`
+	ChemicalPotential *float64  `json:"chemical_potential_J_mol"` // null above the critical temperature
 	State             eos.State `json:"state"`
 }
 
@@ -138,8 +138,12 @@ func isothermProduct(m *eos.Model, iso *eos.Isotherm, volumes []float64) (*produ
 		if err != nil {
 			return nil, err
 		}
-		j.Points = append(j.Points, pointJSON{p.V, p.P, p.Mu, p.State})
-		t.Rows = append(t.Rows, []table.Cell{table.Num(p.V), table.Num(p.P / 1e3), table.Num(p.Mu), table.Text(string(p.State))})
+		mu := table.Num(p.Mu)
+		if !iso.Subcritical {
+			mu = table.Missing("no saturation above the critical temperature")
+		}
+		j.Points = append(j.Points, pointJSON{p.V, p.P, optional(p.Mu, iso.Subcritical), p.State})
+		t.Rows = append(t.Rows, []table.Cell{table.Num(p.V), table.Num(p.P / 1e3), mu, table.Text(string(p.State))})
 	}
 	facts := table.Facts{fact("temperature", iso.T, 6, "K")}
 	if iso.Subcritical {

@@ -205,7 +205,7 @@ func parseNoise(s string) (fit.Noise, error) {
 		return n, nil
 	}
 	v, err := strconv.ParseFloat(degrees, 64)
-	if err != nil || n.Kind != fit.Student {
+	if err != nil || n.Kind != fit.Student || v == 0 { // 0 would stand for the default
 		return n, &usageError{fmt.Sprintf("--noise %q: want gaussian, student, student=DEGREES, student=estimate or survival", s)}
 	}
 	n.Degrees = v

@@ -23,6 +23,9 @@ type NonPositiveError struct {
 }
 
 func (e *NonPositiveError) Error() string {
+	if !(e.PositiveBelow > e.PositiveAbove) {
+		return fmt.Sprintf("surface tension (%s): %.4g N/m at %.10g K is not positive, nor is the fit at any other temperature", e.Form, e.Sigma, e.T)
+	}
 	return fmt.Sprintf("surface tension (%s): %.4g N/m at %.10g K is not positive; the fit holds from %.10g K to %.10g K", e.Form, e.Sigma, e.T, e.PositiveAbove, e.PositiveBelow)
 }
 

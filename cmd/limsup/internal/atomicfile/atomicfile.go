@@ -29,7 +29,7 @@ func (e *WriteError) Unwrap() error { return e.Err }
 //
 // Errors: *WriteError; an error of fill itself comes back as it is.
 func Write(name string, fill func(w io.Writer) error) (err error) {
-	fail := func(err error) error { return &WriteError{name, err} }
+	fail := func(err error) error { return &WriteError{name, cause(err)} }
 	mode := fs.FileMode(0o644)
 	switch info, err := os.Stat(name); {
 	case err == nil && info.IsDir():
@@ -68,17 +68,31 @@ func Write(name string, fill func(w io.Writer) error) (err error) {
 	return nil
 }
 
+// cause leaves out the name of the temporary file, which says nothing to a user and
+// differs from call to call.
+func cause(err error) error {
+	var p *fs.PathError
+	if errors.As(err, &p) {
+		return p.Err
+	}
+	var l *os.LinkError
+	if errors.As(err, &l) {
+		return l.Err
+	}
+	return err
+}
+
 func writeThrough(name string, fill func(w io.Writer) error) error {
 	f, err := os.OpenFile(name, os.O_WRONLY, 0)
 	if err != nil {
-		return &WriteError{name, err}
+		return &WriteError{name, cause(err)}
 	}
 	if err := fill(f); err != nil {
 		f.Close()
 		return err
 	}
 	if err := f.Close(); err != nil {
-		return &WriteError{name, err}
+		return &WriteError{name, cause(err)}
 	}
 	return nil
 }
