@@ -39,14 +39,26 @@ func planFromFlags(c *cli.Context) (fit.Plan, error) {
 	if p.Variant, err = variantOver(c, p.Variant); err != nil {
 		return p, err
 	}
+	var terms []fit.Term
 	for _, s := range c.StringSlice("tune") {
 		t, err := fit.ParseTerm(s)
 		if err != nil {
 			return p, err
 		}
-		drop(&p, t.Name)
-		p.Terms = append(p.Terms, t)
+		terms = append(terms, t)
 	}
+	fixed, err := settings(c, "fix")
+	if err != nil {
+		return p, err
+	}
+	// Flags replace what the file says, not each other: among flags a contradiction is an error.
+	for _, t := range terms {
+		drop(&p, t.Name)
+	}
+	for _, s := range fixed {
+		drop(&p, s.Name)
+	}
+	p.Terms = append(p.Terms, terms...)
 	set, err := settings(c, "set")
 	if err != nil {
 		return p, err
@@ -59,14 +71,7 @@ func planFromFlags(c *cli.Context) (fit.Plan, error) {
 			p.Fixed = append(p.Fixed, s)
 		}
 	}
-	fixed, err := settings(c, "fix")
-	if err != nil {
-		return p, err
-	}
-	for _, s := range fixed {
-		drop(&p, s.Name)
-		p.Fixed = append(p.Fixed, s)
-	}
+	p.Fixed = append(p.Fixed, fixed...)
 	starts, err := settings(c, "start")
 	if err != nil {
 		return p, err
