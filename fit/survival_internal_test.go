@@ -2,7 +2,10 @@ package fit
 
 import (
 	"math"
+	"strings"
 	"testing"
+
+	"gonum.org/v1/gonum/mat"
 )
 
 // fine is blurred by brute force: a trapezoidal sum with steps of 1/64 of the
@@ -75,5 +78,20 @@ func TestBlurredAccuracy(t *testing.T) {
 func BenchmarkBlurred(b *testing.B) {
 	for i := 0; i < b.N; i++ {
 		blurred(-1.5, 4, false)
+	}
+}
+
+// TestWithoutEffect: a location that moves no reading is named, and only then. No
+// data set that passes the checks before has been found to give such a one.
+func TestWithoutEffect(t *testing.T) {
+	l := &layout{theta: []Free{{Name: Threshold, Upper: 35}, {Name: Slope, Upper: 3}}}
+	lik := &likelihood{system: &system{obs: []Observation{}}}
+	h := mat.NewSymDense(2, []float64{4, 0, 0, 0})
+	if d := identify(h, []int{0, 1}, l, lik); len(d.Warnings) != 1 || d.Warnings[0] != "slope has no effect on any reading" || d.cov != nil {
+		t.Errorf("said: %q", d.Warnings)
+	}
+	h.SetSym(1, 1, 9)
+	if d := identify(h, []int{0, 1}, l, lik); strings.Contains(strings.Join(d.Warnings, ""), "no effect") || d.cov == nil || d.Condition != 1 {
+		t.Errorf("said without cause: %q, condition %g", d.Warnings, d.Condition)
 	}
 }

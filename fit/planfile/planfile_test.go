@@ -94,7 +94,7 @@ func TestRefuse(t *testing.T) {
 		{"unknown parameter", `name = "threshold"`, `name = "treshold"`, `plan.toml:37: parameter "treshold"`},
 		{"parameter with a scope in its name", `name = "threshold"`, `name = "threshold/fluid"`, "plan.toml:37: "},
 		{"parameter twice", `name = "threshold"`, `name = "prefactor"`, "plan.toml:37: parameter prefactor a second time"},
-		{"unknown scope", `by = "fluid"`, `by = "colour"`, "plan.toml:21: "},
+		{"unknown scope", `by = "fluid"`, `by = "colour"`, "plan.toml:20: "},
 		{"pooled without scope", `by = "fluid"`, "", "plan.toml:22: slope: pooled needs by"},
 		{"value and tune", "value = -1.5", "value = -1.5\ntune = true", "plan.toml:34: prefactor: value holds a parameter"},
 		{"neither value nor tune", "value = -1.5", "tune = false", "plan.toml:34: prefactor: a parameter that is not tuned needs a value"},
