@@ -84,7 +84,7 @@ func BenchmarkBlurred(b *testing.B) {
 // TestWithoutEffect: a location that moves no reading is named, and only then. No
 // data set that passes the checks before has been found to give such a one.
 func TestWithoutEffect(t *testing.T) {
-	l := &layout{theta: []Free{{Name: Threshold, Upper: 35}, {Name: Slope, Upper: 3}}}
+	l := &layout{theta: []Free{{Name: Threshold, Role: RoleValue, Upper: 35}, {Name: Slope, Role: RoleValue, Upper: 3}}}
 	lik := &likelihood{system: &system{obs: []Observation{}}}
 	h := mat.NewSymDense(2, []float64{4, 0, 0, 0})
 	if d := identify(h, []int{0, 1}, l, lik); len(d.Warnings) != 1 || d.Warnings[0] != "slope has no effect on any reading" || d.cov != nil {
