@@ -27,6 +27,9 @@ func once(app *cli.App, line *commandLine) error {
 	}
 	seen := map[string]bool{}
 	for i := 0; i < len(line.flags); i++ {
+		if !strings.HasPrefix(line.flags[i], "-") {
+			continue // the value of a list flag, as in --tune surface-tension
+		}
 		name, _, valued := strings.Cut(strings.TrimLeft(line.flags[i], "-"), "=")
 		first, ok := single[name]
 		if !ok {
