@@ -45,8 +45,8 @@ func logLikelihood(rows []reading, q float64) float64 {
 //
 // s is sought up to twice the largest residual: for boiled rows alone it lies at or
 // below the largest, since each term falls beyond its own e² − v. The interval is
-// scanned, because ln L may have more than one maximum when v differ, and the best part
-// is refined by golden section.
+// scanned, because ln L may have more than one maximum when v differ, and each peak of the
+// scan that comes close to the highest is refined by golden section.
 func maximumLikelihood(rows []reading) (lnL, spread float64, ok bool) {
 	top, least := 0.0, math.Inf(1)
 	for _, r := range rows {
@@ -63,37 +63,55 @@ func maximumLikelihood(rows []reading) (lnL, spread float64, ok bool) {
 		}
 		return top * math.Pow(10, -12*(1-float64(min(max(i, 0), scan))/scan))
 	}
-	best, lnL := 0, math.Inf(-1)
-	for i := range scan + 1 {
-		if l := logLikelihood(rows, at(i)); l > lnL {
-			best, lnL = i, l
-		}
+	var grid [scan + 1]float64
+	lnL = math.Inf(-1)
+	for i := range grid {
+		grid[i] = logLikelihood(rows, at(i))
+		lnL = math.Max(lnL, grid[i])
 	}
-	q := at(best)
-	lo, hi := at(best-1), at(best+1)
-	golden := (math.Sqrt(5) - 1) / 2
-	a, b := hi-golden*(hi-lo), lo+golden*(hi-lo)
-	la, lb := logLikelihood(rows, a), logLikelihood(rows, b)
-	for range 45 { // 0.618⁴⁵ is the square root of rounding
-		if la < lb {
-			lo, a, la = a, b, lb
-			b = lo + golden*(hi-lo)
-			lb = logLikelihood(rows, b)
-		} else {
-			hi, b, lb = b, a, la
-			a = hi - golden*(hi-lo)
-			la = logLikelihood(rows, a)
+	q, highest := 0.0, lnL
+	for i, l := range grid {
+		peak := (i == 0 || l >= grid[i-1]) && (i == scan || l >= grid[i+1])
+		if !peak || l < highest-nearTop {
+			continue
 		}
-	}
-	// The grid point stands unless the search found better: at the end of the interval it
-	// is the maximum itself.
-	if l := max(la, lb); l > lnL {
-		lnL, q = l, a
-		if lb > la {
-			q = b
+		// The grid point stands unless the search finds better: at the end of the interval it
+		// is the maximum itself.
+		if l >= lnL {
+			lnL, q = l, at(i)
+		}
+		if l, x := golden(func(q float64) float64 { return logLikelihood(rows, q) }, at(i-1), at(i+1)); l > lnL {
+			lnL, q = l, x
 		}
 	}
 	return lnL, math.Sqrt(q), true
+}
+
+// nearTop is how far below the highest point of the scan the top of another peak is
+// looked for: steps of a factor 1.54 in q leave at most (n/16)·(ln 1.54)² ≈ 0.012n, the curvature of
+// n rows, less than 1 for 80 rows; with more rows a second peak so close in height is an accident.
+const nearTop = 1
+
+// golden finds a maximum of f between lo and hi by golden section.
+func golden(f func(float64) float64, lo, hi float64) (value, at float64) {
+	ratio := (math.Sqrt(5) - 1) / 2
+	a, b := hi-ratio*(hi-lo), lo+ratio*(hi-lo)
+	la, lb := f(a), f(b)
+	for range 45 { // 0.618⁴⁵ is the square root of rounding
+		if la < lb {
+			lo, a, la = a, b, lb
+			b = lo + ratio*(hi-lo)
+			lb = f(b)
+		} else {
+			hi, b, lb = b, a, la
+			a = hi - ratio*(hi-lo)
+			la = f(a)
+		}
+	}
+	if lb > la {
+		return lb, b
+	}
+	return la, a
 }
 
 // criteria returns

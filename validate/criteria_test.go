@@ -45,6 +45,17 @@ func TestNoSpreadWhereStatedUncertaintiesSuffice(t *testing.T) {
 	}
 }
 
+// Two peaks of almost the same height, found by the property test below: the scan had
+// the lower one for the higher, and 0.003 of ln L were missed.
+func TestSpreadOfTwoPeaks(t *testing.T) {
+	rows := []reading{{0.0625, 0.8125, false}, {0.4296875, 0.0478515625, false}, {0.0625, 0.265625, false}, {0.0625, 0.2265625, false},
+		{18.5, 10.40625, false}, {1, 50, false}, {0.015625, 1, true}, {0.03125, 0.046875, false}}
+	lnL, s, ok := maximumLikelihood(rows)
+	if q := 28.77777777777778; !ok || !(lnL >= logLikelihood(rows, q)) || math.Abs(s*s-q) > 5 {
+		t.Errorf("ln L %.9g at s² = %g; %.9g at %g", lnL, s*s, logLikelihood(rows, q), q)
+	}
+}
+
 // The spread found is a maximum: no other of a fine grid is more likely. A maximum
 // between grid points exceeds it by at most the curvature times the spacing.
 func TestSpreadIsMostLikely(t *testing.T) {
