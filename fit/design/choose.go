@@ -46,10 +46,11 @@ func (q *Problem) Rank() ([]Single, error) {
 	return out, nil
 }
 
-// Step is one member of a batch, in the order in which to measure.
+// Step is one member of a batch, in the order in which to measure: a campaign that
+// ends early loses least.
 type Step struct {
 	Candidate int
-	// Value is Φ after this step; NaN never: where the steps so far do not determine
+	// Value is Φ after this step. Where the steps so far and the prior do not determine
 	// the parameters, Determined is false and Value is 0.
 	Value      float64
 	Determined bool
@@ -251,7 +252,27 @@ func (s *search) exchange() bool {
 	return true
 }
 
-// batch puts the members in the order of their worth and judges the whole.
+// least is the member of a batch, given as counts, whose loss costs least.
+func (s *search) least(count []int) int {
+	at, value := -1, 0.0
+	for i, k := range count {
+		if k == 0 {
+			continue
+		}
+		if at < 0 {
+			at, value = i, math.Inf(1)
+		}
+		count[i]--
+		if st, ok := newState(s.r.kind, s.r.a, s.r.information(s.start, count)); ok && better(st.value, value) {
+			at, value = i, st.value
+		}
+		count[i]++
+	}
+	return at
+}
+
+// batch judges a batch and puts its members in the order in which to measure: the
+// last is the one that the batch would miss least, and so on backwards.
 func (s *search) batch() (*Batch, error) {
 	r := s.r
 	b := &Batch{Count: s.count(), Greedy: s.before, Exchanges: s.exchanges}
@@ -269,28 +290,15 @@ func (s *search) batch() (*Batch, error) {
 	}
 	b.Bound = final.bound(s.n, sum, most)
 
-	left, taken := slices.Clone(b.Count), make([]int, len(b.Count))
-	for range s.n {
-		st, ok := newState(r.kind, r.a, r.information(s.start, taken))
-		if !ok {
-			return nil, &SingularError{Measurements: s.n, Parameters: r.p}
-		}
-		at, value := -1, 0.0
-		for i, k := range left {
-			if k == 0 {
-				continue
-			}
-			if v := st.after(r.f[i]); at < 0 || better(v, value) {
-				at, value = i, v
-			}
-		}
-		left[at]--
-		taken[at]++
-		step := Step{Candidate: at}
-		if e, ok := newState(r.kind, r.a, r.information(r.prior, taken)); ok {
+	b.Steps = make([]Step, s.n)
+	left := slices.Clone(b.Count)
+	for k := s.n - 1; k >= 0; k-- {
+		step := &b.Steps[k]
+		if e, ok := newState(r.kind, r.a, r.information(r.prior, left)); ok {
 			step.Value, step.Determined = e.value, true
 		}
-		b.Steps = append(b.Steps, step)
+		step.Candidate = s.least(left)
+		left[step.Candidate]--
 	}
 	return b, nil
 }

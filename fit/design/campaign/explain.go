@@ -26,7 +26,7 @@ type history struct {
 
 // explain writes the sentences of the singles, compared with now, and of the groups,
 // compared with the batch without them.
-func (p *Plan) explain(own *design.Problem) error {
+func (p *Plan) explain(own, batch *design.Problem) error {
 	var before history
 	if p.Data != nil && !p.Fresh {
 		for i := range p.Data.Observations {
@@ -52,7 +52,7 @@ func (p *Plan) explain(own *design.Problem) error {
 		count[s.Reading]--
 		s.Why = p.why(&before, &p.Readings[s.Reading], now.Covariance, after.Covariance)
 	}
-	all, err := own.Evaluate(p.Count)
+	all, err := batch.Evaluate(p.Count)
 	if err != nil {
 		return err
 	}
@@ -61,7 +61,7 @@ func (p *Plan) explain(own *design.Problem) error {
 		r := &p.Readings[g.Reading]
 		without := slices.Clone(p.Count)
 		without[g.Reading] = 0
-		rest, err := own.Evaluate(without)
+		rest, err := batch.Evaluate(without)
 		if err != nil {
 			return err
 		}
@@ -208,6 +208,9 @@ func (p *Plan) narrowed(before, after *mat.SymDense) string {
 	}
 	if at < 0 || best < 1e-4 {
 		return ""
+	}
+	if best > 0.95 { // what is left without it is the bounds
+		return fmt.Sprintf("; without it %s is hardly determined", p.space.params[at].Label)
 	}
 	return fmt.Sprintf("; the uncertainty of %s is %s smaller", p.space.params[at].Label, percent(best))
 }

@@ -131,34 +131,42 @@ func Make(in Input) (*Plan, error) {
 		return nil, err
 	}
 	p.Quantities = quantities
-	own := p.problem(criterion)
-	chosen := own
+	own, batch := p.problem(criterion, boundsCount), p.problem(criterion, boundsSupport)
+	single, chosen := own, batch
 	if in.Target.Rival != nil {
-		if chosen, err = p.tellProblem(); err != nil {
+		if single, err = p.tellProblem(boundsCount); err == nil {
+			chosen, err = p.tellProblem(boundsSupport)
+		}
+		if err != nil {
 			return nil, err
 		}
 	}
-	if err := p.choose(chosen, own); err != nil {
+	if err = p.rank(single); err == nil {
+		if err = p.choose(chosen); err == nil {
+			err = p.uncertainties(own, batch)
+		}
+	}
+	if err != nil {
 		return nil, err
 	}
 	if in.Target.Rival != nil {
 		p.tell()
 	}
-	if err := p.explain(own); err != nil {
+	if err := p.explain(own, batch); err != nil {
 		return nil, err
 	}
 	p.Parameters, p.Notes = s.params, append(p.Notes, s.notes...)
 	for i := range p.Parameters {
 		if x := &p.Parameters[i]; x.Assumed && !x.Spread && x.diffuse == 0 && x.After > leaning*x.Before {
-			p.Notes = append(p.Notes, fmt.Sprintf("%s: after the batch its uncertainty still leans on its bounds, so that the promises are too good; measure more, or set a prior", x.Label))
+			p.Notes = append(p.Notes, fmt.Sprintf("%s: the batch leaves an uncertainty of the order of its bounds, where limits are no longer straight lines of it and promises are rough; measure more, or set a prior", x.Label))
 		}
 	}
 	return p, p.verdict(own)
 }
 
-// leaning is the share of the uncertainty by the bounds above which a tenth or more
-// of the information about a parameter comes from them.
-const leaning = 0.316
+// leaning is the share of the uncertainty by the bounds above which a parameter
+// reaches them within two standard uncertainties of its middle.
+const leaning = 0.43
 
 // readings predicts every candidate; those that the model cannot predict are listed.
 func (p *Plan) readings() error {
@@ -217,9 +225,9 @@ func orUnnamed(method string) string {
 	return method
 }
 
-// problem is the choice in the space of the model.
-func (p *Plan) problem(c design.Criterion) *design.Problem {
-	q := &design.Problem{Prior: p.space.information(0), Criterion: c}
+// problem is the choice in the space of the model, with bounds counted to a share.
+func (p *Plan) problem(c design.Criterion, share float64) *design.Problem {
+	q := &design.Problem{Prior: p.space.information(0, share), Criterion: c}
 	for i := range p.Readings {
 		r := &p.Readings[i]
 		q.Candidates = append(q.Candidates, design.Candidate{Rows: p.space.factors(&r.sensitivity, r.variance), Most: r.Most})
@@ -227,9 +235,8 @@ func (p *Plan) problem(c design.Criterion) *design.Problem {
 	return q
 }
 
-// choose ranks, chooses and compares by one problem, and takes the uncertainties
-// of parameters and quantities from the other, that of the model.
-func (p *Plan) choose(q, own *design.Problem) error {
+// rank judges the candidates one by one.
+func (p *Plan) rank(q *design.Problem) error {
 	now, err := q.Evaluate(nil)
 	if err != nil {
 		return err
@@ -250,14 +257,20 @@ func (p *Plan) choose(q, own *design.Problem) error {
 		}
 		s.Repeats, s.Bounded, s.AtStop = r.Enough, r.Bounded, r.Mean[len(r.Mean)-1]
 	}
+	return nil
+}
+
+// choose finds the batch. Where it leaves more uncertainty than the bounds allow, the
+// bounds hold.
+func (p *Plan) choose(q *design.Problem) error {
 	b, err := q.Choose(p.N)
 	if err != nil {
 		return err
 	}
-	p.Count, p.After, p.Slack, p.Exchanges = b.Count, b.Mean(), b.Slack(), b.Exchanges
+	p.Count, p.After, p.Slack, p.Exchanges = b.Count, math.Min(b.Mean(), p.Before), b.Slack(), b.Exchanges
 	seen := map[int]bool{}
 	for _, s := range b.Steps {
-		p.Steps = append(p.Steps, Step{Reading: s.Candidate, After: math.Exp(s.Value)})
+		p.Steps = append(p.Steps, Step{Reading: s.Candidate, After: math.Min(math.Exp(s.Value), p.Before)})
 		if !seen[s.Candidate] {
 			seen[s.Candidate] = true
 			p.Groups = append(p.Groups, Group{Reading: s.Candidate, Count: p.Count[s.Candidate]})
@@ -270,8 +283,8 @@ func (p *Plan) choose(q, own *design.Problem) error {
 	if err != nil {
 		return err
 	}
-	p.Spaced = e.Mean()
-	return p.uncertainties(own)
+	p.Spaced = math.Min(e.Mean(), p.Before)
+	return nil
 }
 
 // singlesFollowed is the number of single measurements, from the best, whose
@@ -279,10 +292,14 @@ func (p *Plan) choose(q, own *design.Problem) error {
 const singlesFollowed = 20
 
 // uncertainties fills those of parameters and quantities.
-func (p *Plan) uncertainties(own *design.Problem) error {
+func (p *Plan) uncertainties(own, batch *design.Problem) error {
 	var of [3]*design.Evaluation
 	for i, count := range [][]int{nil, p.Count, p.SpacedCount} {
-		e, err := own.Evaluate(count)
+		q := batch
+		if i == 0 {
+			q = own
+		}
+		e, err := q.Evaluate(count)
 		if err != nil {
 			return err
 		}
@@ -292,12 +309,14 @@ func (p *Plan) uncertainties(own *design.Problem) error {
 		x := &p.space.params[i]
 		x.Before, x.After = math.Sqrt(of[0].Covariance.At(i, i)), math.Sqrt(of[1].Covariance.At(i, i))
 		if x.diffuse > 0 {
-			x.Before, x.After = math.Min(x.Before, x.diffuse), math.Min(x.After, x.diffuse)
+			x.Before = math.Min(x.Before, x.diffuse)
 		}
+		x.After = math.Min(x.After, x.Before)
 	}
 	for i := range p.Quantities {
 		x := &p.Quantities[i]
-		x.Before, x.After, x.Spaced = of[0].Uncertainty(x.direction), of[1].Uncertainty(x.direction), of[2].Uncertainty(x.direction)
+		x.Before = of[0].Uncertainty(x.direction)
+		x.After, x.Spaced = math.Min(of[1].Uncertainty(x.direction), x.Before), math.Min(of[2].Uncertainty(x.direction), x.Before)
 	}
 	return nil
 }

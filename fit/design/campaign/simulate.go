@@ -6,6 +6,7 @@ import (
 	"math"
 	"math/rand/v2"
 	"runtime"
+	"slices"
 	"sync"
 
 	"limsup/data/measure"
@@ -172,6 +173,18 @@ func (p *Plan) startAtModel(plan fit.Plan) fit.Plan {
 	return plan
 }
 
+// withGroups leaves out the offset where all rows are of one group: there is nothing
+// to compare it with.
+func withGroups(plan fit.Plan, rows []truth) fit.Plan {
+	plan.Terms = slices.DeleteFunc(slices.Clone(plan.Terms), func(t fit.Term) bool {
+		group := func(r *truth) string {
+			return map[fit.By]string{fit.ByFluid: r.o.Record.Key, fit.ByMethod: r.o.Method, fit.ByBatch: r.o.Batch}[t.By]
+		}
+		return t.Name == fit.Offset && t.By != fit.Shared && !slices.ContainsFunc(rows, func(r truth) bool { return group(&r) != group(&rows[0]) })
+	})
+	return plan
+}
+
 // outcome is one simulated campaign.
 type outcome struct {
 	values        []float64 // of the quantities
@@ -194,6 +207,7 @@ func (p *Plan) simulate(ctx context.Context, plan fit.Plan, base []truth, count 
 			rows = append(rows, t)
 		}
 	}
+	plan = withGroups(plan, rows)
 	workers := o.Workers
 	if workers <= 0 {
 		workers = runtime.GOMAXPROCS(0)

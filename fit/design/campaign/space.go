@@ -35,8 +35,9 @@ type space struct {
 
 // entry is one element of the upper triangle of an information matrix.
 type entry struct {
-	i, j int
-	v    float64
+	i, j   int
+	v      float64
+	bounds bool // it stands for the bounds of a parameter
 }
 
 // newSpace lays out the parameters of a calibrated model. c may be nil, where the
@@ -83,7 +84,7 @@ func (s *space) know(c *fit.Calibration) {
 	if len(spreads) > 0 && !s.inverse(spreads) {
 		for _, i := range spreads {
 			u := s.model.Parameters[i].U
-			s.entries = append(s.entries, entry{s.own[i], s.own[i], 1 / (u * u)})
+			s.entries = append(s.entries, entry{s.own[i], s.own[i], 1 / (u * u), false})
 		}
 	}
 	if len(locations) == 0 || complete && s.inverse(locations) {
@@ -95,7 +96,7 @@ func (s *space) know(c *fit.Calibration) {
 		s.notes = append(s.notes, "the data do not determine the parameters; where they tell nothing, the bounds stand in")
 		for a, i := range locations {
 			for _, j := range locations[a:] {
-				s.entries = append(s.entries, entry{s.own[i], s.own[j], c.Information.At(i, j)})
+				s.entries = append(s.entries, entry{s.own[i], s.own[j], c.Information.At(i, j), false})
 			}
 		}
 	}
@@ -132,7 +133,7 @@ func (s *space) inverse(block []int) bool {
 	}
 	for a, i := range block {
 		for b := a; b < n; b++ {
-			s.entries = append(s.entries, entry{s.own[i], s.own[block[b]], inv.At(a, b) / (scale[a] * scale[b])})
+			s.entries = append(s.entries, entry{s.own[i], s.own[block[b]], inv.At(a, b) / (scale[a] * scale[b]), false})
 		}
 	}
 	return true
@@ -161,7 +162,7 @@ func (s *space) forget(c *fit.Calibration) {
 		for i := range s.model.Parameters {
 			e := &s.model.Parameters[i]
 			if k, ok := s.own[i]; ok && e.Name == r.Name && e.Role == fit.RoleValue && (r.Group == "" || r.Group == e.Group) {
-				s.entries = append(s.entries, entry{k, k, 1 / (r.Spread * r.Spread)})
+				s.entries = append(s.entries, entry{k, k, 1 / (r.Spread * r.Spread), false})
 			}
 		}
 	}
@@ -190,13 +191,13 @@ func (s *space) pool(name string) (mean int, τ float64) {
 // bound adds the information of a uniform distribution over the bounds.
 func (s *space) bound(k int, lo, hi float64) {
 	s.params[k].Assumed = true
-	s.entries = append(s.entries, entry{k, k, 12 / ((hi - lo) * (hi - lo))})
+	s.entries = append(s.entries, entry{k, k, 12 / ((hi - lo) * (hi - lo)), true})
 }
 
 // link ties a group to the mean of its pool.
 func (s *space) link(k, mean int, τ float64) {
 	w := 1 / (τ * τ)
-	s.entries = append(s.entries, entry{k, k, w}, entry{mean, mean, w}, entry{min(k, mean), max(k, mean), -w})
+	s.entries = append(s.entries, entry{k, k, w, false}, entry{mean, mean, w, false}, entry{min(k, mean), max(k, mean), -w, false})
 }
 
 // diffuse is how many times wider than its bounds the value of a group without rows is
@@ -228,13 +229,25 @@ func (s *space) reach(x *fit.Sensitivity, wanted bool) {
 	}
 }
 
-// information is that before the first measurement, behind so many parameters in
-// front of which nothing is known.
-func (s *space) information(front int) *mat.SymDense {
+// The share of their information with which bounds count. A first measurement is
+// ranked with what the bounds tell; a batch is to determine the parameters by itself,
+// as the calibration after it must, and the bounds only keep its first steps well posed.
+const (
+	boundsCount   = 1.0
+	boundsSupport = 1e-4
+)
+
+// information is that before the first measurement, with bounds counted to a share,
+// behind so many parameters in front of which nothing is known.
+func (s *space) information(front int, share float64) *mat.SymDense {
 	m := mat.NewSymDense(front+len(s.params), nil)
 	for _, e := range s.entries {
+		v := e.v
+		if e.bounds {
+			v *= share
+		}
 		i, j := front+min(e.i, e.j), front+max(e.i, e.j)
-		m.SetSym(i, j, m.At(i, j)+e.v)
+		m.SetSym(i, j, m.At(i, j)+v)
 	}
 	return m
 }

@@ -2,6 +2,7 @@ package campaign
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/stat/distuv"
 
@@ -38,7 +39,7 @@ type Tell struct {
 const tellLevel = 0.95
 
 // tellProblem is the choice in the space (κ, θ of the rival).
-func (p *Plan) tellProblem() (*design.Problem, error) {
+func (p *Plan) tellProblem(share float64) (*design.Problem, error) {
 	rival := p.Target.Rival
 	s := newSpace(rival.Model, rival.Calibration, p.Fresh)
 	if len(rival.Model.Parameters) == 0 {
@@ -55,7 +56,7 @@ func (p *Plan) tellProblem() (*design.Problem, error) {
 	}
 	n := len(s.params)
 	wide := func(κ float64, row []float64) []float64 { return append([]float64{κ}, row...) }
-	q := &design.Problem{Prior: s.information(1), Criterion: design.Criterion{Kind: design.Linear, Directions: [][]float64{wide(1, make([]float64, n))}}}
+	q := &design.Problem{Prior: s.information(1, share), Criterion: design.Criterion{Kind: design.Linear, Directions: [][]float64{wide(1, make([]float64, n))}}}
 	for i := range p.Readings {
 		r := &p.Readings[i]
 		rows := s.factors(&sensitivities[i], r.variance)
@@ -74,7 +75,9 @@ func (p *Plan) tellProblem() (*design.Problem, error) {
 		return nil, err
 	}
 	for _, note := range s.notes {
-		p.Notes = append(p.Notes, rival.Name+": "+note)
+		if note = rival.Name + ": " + note; !slices.Contains(p.Notes, note) {
+			p.Notes = append(p.Notes, note)
+		}
 	}
 	return q, nil
 }
