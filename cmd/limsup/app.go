@@ -55,7 +55,7 @@ func newApp(stdout, stderr io.Writer) *cli.App {
 		Action:                    noCommand,
 		CommandNotFound:           nil,
 		Commands: []*cli.Command{
-			checkCommand(), calibrateCommand(), validateCommand(), compareCommand(), predictCommand(), exportCommand(),
+			checkCommand(), calibrateCommand(), validateCommand(), compareCommand(), predictCommand(), exportCommand(), designCommand(),
 			fluidsCommand(), isothermCommand(), embryoCommand(), fluxCommand(), shareCommand(), gatherCommand(), plotCommand(), reportCommand(),
 			helpCommand(), manCommand(), completionCommand(),
 		},

@@ -15,6 +15,8 @@ import (
 	"limsup/eos/nucleation"
 	"limsup/eos/tension"
 	"limsup/fit"
+	"limsup/fit/design"
+	"limsup/fit/design/campaign"
 	"limsup/fit/export"
 	"limsup/fit/modelfile"
 	"limsup/validate"
@@ -60,6 +62,10 @@ func status(err error) int {
 		is[*atomicfile.WriteError](err), is[*fs.PathError](err):
 		return statusInput
 	case is[*export.ToleranceError](err):
+		return statusNoAnswer
+	case is[*campaign.InputError](err), is[campaign.FileErrors](err), is[*design.InputError](err):
+		return statusInput
+	case is[*design.SingularError](err):
 		return statusNoAnswer
 	case is[*fit.RowError](err), is[*validate.FoldError](err):
 		return statusNoAnswer
