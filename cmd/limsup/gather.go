@@ -15,7 +15,7 @@ func gatherCommand() *cli.Command {
 		Name:      "gather",
 		Usage:     "join the parts of a computation that was done in shares",
 		ArgsUsage: "PART ...",
-		Description: "Prints, and with --out writes, byte for byte what the command prints without --share. The parts may come in any order and from any folder; the first carries the measurements and fluids, so nothing else is needed.\n\n" +
+		Description: "Does what the command does without --share, byte for byte: compare prints its tables, or writes them to --out; calibrate prints its tables, and writes the model to --out. The parts may come in any order and from any folder; the first carries the measurements and fluids, so nothing else is needed.\n\n" +
 			"A share that is missing, a part that is given twice, and a part of another computation (other data, plan, seed, number of shares, version of limsup or kind of processor) are named, and nothing is printed.\n\n" +
 			"Example: limsup compare --data drops.csv --share 1/2 --out one.json\n" +
 			"         limsup compare --data drops.csv --share 2/2 --out two.json\n" +

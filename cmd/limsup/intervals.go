@@ -30,10 +30,9 @@ type intervals struct {
 	boot     *fit.Bootstrap
 }
 
-// intervalsFromFlags computes them; nil where none was asked for.
-func intervalsFromFlags(c *cli.Context, cal *fit.Calibration) (*intervals, error) {
-	names, n := c.StringSlice("profile"), c.Int("bootstrap")
-	if len(names) == 0 && !c.IsSet("bootstrap") {
+// intervalOptions reads the flags; nil where no interval was asked for.
+func intervalOptions(c *cli.Context) (*intervals, error) {
+	if len(c.StringSlice("profile")) == 0 && !c.IsSet("bootstrap") {
 		for _, f := range []string{"resample", "level"} {
 			if c.IsSet(f) {
 				return nil, &usageError{"--" + f + " needs --bootstrap or --profile"}
@@ -55,7 +54,16 @@ func intervalsFromFlags(c *cli.Context, cal *fit.Calibration) (*intervals, error
 		}
 		r.resample = fit.Resampling(s)
 	}
-	for _, name := range names {
+	return r, nil
+}
+
+// intervalsFromFlags computes them; nil where none was asked for.
+func intervalsFromFlags(c *cli.Context, cal *fit.Calibration) (*intervals, error) {
+	r, err := intervalOptions(c)
+	if r == nil || err != nil {
+		return nil, err
+	}
+	for _, name := range c.StringSlice("profile") {
 		labels := []string{name}
 		if name == "all" {
 			labels = nil
@@ -76,12 +84,13 @@ func intervalsFromFlags(c *cli.Context, cal *fit.Calibration) (*intervals, error
 	}
 	bar := startProgress(c, "resampling")
 	defer bar.Stop()
-	queries := cal.Queries()
-	reps, err := cal.Resample(fit.BootstrapOptions{Resample: r.resample, Count: n, Seed: c.Uint64("seed"), Queries: queries, Progress: bar.Set})
+	o := r.bootstrap(c, cal)
+	o.Progress = bar.Set
+	reps, err := resampleOrGather(c, cal, o)
 	if err != nil {
 		return nil, err
 	}
-	r.boot, err = cal.Summarise(reps, queries, r.level)
+	r.boot, err = cal.Summarise(reps, o.Queries, r.level)
 	return r, err
 }
 

@@ -50,7 +50,7 @@ type divisible interface {
 func writePart(c *cli.Context, kind string, s share.Share, work divisible) error {
 	p := &share.Part{Limsup: version(), Architecture: runtime.GOARCH, Kind: kind, Share: s, Seed: c.Uint64("seed"), Plan: planOf(c), Jobs: work.Len()}
 	for _, role := range inputRoles {
-		for _, name := range c.StringSlice(role) {
+		for _, name := range valuesOf(c, role) {
 			text, err := os.ReadFile(name)
 			if err != nil {
 				return err
@@ -69,8 +69,23 @@ func writePart(c *cli.Context, kind string, s share.Share, work divisible) error
 	return p.Encode(c.App.Writer)
 }
 
+// valuesOf lists the values of a flag as text; none where it is not set.
+func valuesOf(c *cli.Context, name string) []string {
+	switch v := c.Value(name).(type) {
+	case cli.StringSlice:
+		return v.Value()
+	case nil:
+		return nil
+	default:
+		if !c.IsSet(name) {
+			return nil
+		}
+		return []string{fmt.Sprint(v)}
+	}
+}
+
 // inputRoles are the flags that name files to read.
-var inputRoles = []string{"data", "fluids"}
+var inputRoles = []string{"data", "fluids", "plan"}
 
 // apart are flags that are no part of the plan; the general ones are not either.
 var apart = []string{"share", "format", "out"}
@@ -79,7 +94,8 @@ func inPlan(name string) bool {
 	return !slices.Contains(apart, name) && !slices.ContainsFunc(general(), func(f cli.Flag) bool { return slices.Contains(f.Names(), name) })
 }
 
-// planOf lists the flags of a call that are part of the plan and not at their default.
+// planOf lists the flags of a call that are part of the plan. A flag that is given its
+// default counts, too: given, it may overrule a plan file.
 func planOf(c *cli.Context) []share.Flag {
 	var plan []share.Flag
 	for _, f := range c.Command.Flags {
@@ -87,23 +103,7 @@ func planOf(c *cli.Context) []share.Flag {
 		if !inPlan(name) || !c.IsSet(name) {
 			continue
 		}
-		values := []string{fmt.Sprint(c.Value(name))}
-		byDefault := ""
-		switch f := f.(type) {
-		case *cli.StringSliceFlag:
-			values = c.StringSlice(name)
-		case *cli.StringFlag:
-			byDefault = f.Value
-		case *cli.Uint64Flag:
-			byDefault = fmt.Sprint(f.Value)
-		case *cli.IntFlag:
-			byDefault = fmt.Sprint(f.Value)
-		case *cli.BoolFlag:
-			byDefault = fmt.Sprint(f.Value)
-		}
-		if len(values) > 0 && !(len(values) == 1 && values[0] == byDefault) {
-			plan = append(plan, share.Flag{Name: name, Values: values})
-		}
+		plan = append(plan, share.Flag{Name: name, Values: valuesOf(c, name)})
 	}
 	return plan
 }

@@ -2,7 +2,6 @@ package main
 
 import (
 	"fmt"
-	"os"
 	"slices"
 	"strconv"
 	"strings"
@@ -129,7 +128,7 @@ func planFile(c *cli.Context) (p fit.Plan, hasSeed bool, err error) {
 	if name == "" {
 		return p, false, nil
 	}
-	f, err := os.Open(name)
+	f, err := openInput(c, "plan", name)
 	if err != nil {
 		return p, false, err
 	}

@@ -11,6 +11,7 @@ import (
 	"limsup/cmd/limsup/internal/atomicfile"
 	"limsup/cmd/limsup/internal/engine"
 	"limsup/data/quantity"
+	"limsup/validate/share"
 )
 
 func shareCommand() *cli.Command {
@@ -21,6 +22,7 @@ func shareCommand() *cli.Command {
 		Description: "Prints a batch script with a Slurm job array, or the manifest of a Kubernetes Indexed Job. Each task computes one share and writes its part into a folder; limsup gather joins the parts. A share does not depend on where, when or how often it is computed, so a task that was killed is simply repeated.\n\n" +
 			"The names of files are used where the shares run: in Slurm relative to the folder of sbatch, in Kubernetes relative to the mounted volume.\n\n" +
 			"Examples: limsup share --engine slurm --parts 8 --out job.sh -- compare --data drops.csv --nested\n" +
+			"          limsup share --engine slurm --parts 20 --out job.sh -- calibrate --data drops.csv --bootstrap 10000\n" +
 			"          limsup share --engine kubernetes --parts 8 --image registry.example/limsup:1 --claim drops --out job.yaml -- compare --data drops.csv",
 		Flags: []cli.Flag{
 			&cli.StringFlag{Name: "engine", Usage: "`ENGINE` that runs the shares: " + strings.Join(engine.Names(), " or ")},
@@ -73,6 +75,9 @@ func checkDivided(words []string) error {
 				if c.IsSet(name) {
 					return &usageError{fmt.Sprintf("%s --%s: the job sets --share and --out itself; give --format and --out to limsup gather", commandName(c), name)}
 				}
+			}
+			if c.Command.Name == dividedCommand[share.Bootstrap] && !c.IsSet("bootstrap") {
+				return &usageError{commandName(c) + " is divided by the replicates of --bootstrap NUMBER"}
 			}
 			if len(c.StringSlice("data")) == 0 {
 				return &usageError{commandName(c) + " needs --data FILE"}

@@ -155,8 +155,70 @@ func TestGather(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	if got := do(t, append(args, "--share", "2/3", "--keep", "90%", "--quiet")...); got != string(second) {
+	if got := do(t, append(args, "--share", "2/3", "--quiet")...); got != string(second) {
 		t.Errorf("share 2/3 comes out otherwise: %s", firstDifference(got, string(second)))
+	}
+}
+
+// TestGatherBootstrap does the same for a bootstrap of a calibration by a plan file, with
+// the model file that the command writes.
+func TestGatherBootstrap(t *testing.T) {
+	dir := t.TempDir()
+	t.Chdir(dir)
+	write := func(name, text string) {
+		if err := os.WriteFile(name, []byte(text), 0o644); err != nil {
+			t.Fatal(err)
+		}
+	}
+	write("drops.csv", "fluid,temperature/K,pressure/kPa,batch\nn-pentane,419.8,101.3,a\nn-hexane,455.1,101.3,a\nn-heptane,487.2,101.3,b\npropane,326.3,101.3,b\nisobutane,361.4,101.3,b\n")
+	write("plan.toml", "[model]\nequation = \"peng-robinson\"\n\n[[parameter]]\nname = \"threshold\"\n")
+	for _, resample := range []string{"rows", "batch", "parametric"} {
+		args := []string{"calibrate", "--data", "drops.csv", "--plan", "plan.toml", "--limit", "kinetic", "--bootstrap", "70", "--resample", resample, "--level", "80%", "--folds", "none", "--profile", "threshold"}
+		formats := []string{"table", "json"}
+		want := map[string]string{}
+		for _, f := range formats {
+			want[f] = do(t, append(args, "--format", f, "--out", "model.json")...)
+		}
+		model, err := os.ReadFile("model.json")
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, n := range []int{1, 3} {
+			parts := inShares(t, n, args)
+			for _, name := range []string{"drops.csv", "plan.toml", "model.json"} {
+				if err := os.Rename(name, name+".away"); err != nil {
+					t.Fatal(err)
+				}
+			}
+			for _, f := range formats {
+				if got := do(t, append([]string{"gather", "--format", f, "--out", "model.json"}, parts...)...); got != want[f] {
+					t.Errorf("%s, %d parts as %s: %s", resample, n, f, firstDifference(got, want[f]))
+				}
+			}
+			if got, err := os.ReadFile("model.json"); err != nil || !bytes.Equal(got, model) {
+				t.Errorf("%s, %d parts: the model file differs, %v", resample, n, err)
+			}
+			for _, name := range []string{"drops.csv", "plan.toml", "model.json"} {
+				if err := os.Rename(name+".away", name); err != nil {
+					t.Fatal(err)
+				}
+			}
+		}
+	}
+	parts := inShares(t, 2, []string{"calibrate", "--data", "drops.csv", "--bootstrap", "9"})
+	text, err := os.ReadFile(parts[1])
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, change := range [][2]string{{`"Index":4`, `"Index":5`}, {`"Values":[`, `"Values":[1,`}, {`"HasLimit":[true`, `"HasLimit":[true,true`}, {`"Failure"`, `"failed"`}} {
+		bent := strings.Replace(string(text), change[0], change[1], 1)
+		if bent == string(text) {
+			t.Fatalf("no %s in a part", change[0])
+		}
+		write("bent.json", bent)
+		if out, message, code := invoke(t, "gather", parts[0], "bent.json"); code != statusInput || out != "" || !strings.Contains(message, "gathered parts: not a usable part") {
+			t.Errorf("%s: status %d, %q", change[1], code, message)
+		}
 	}
 }
 
@@ -169,6 +231,9 @@ func TestGatherRefuses(t *testing.T) {
 		do(t, append(append(args, change...), "--share", fmt.Sprintf("%d/3", k), "--out", name)...)
 		return name
 	}
+	args[len(args)-1] = "6" // of --seed
+	seeded := with(3)
+	args[len(args)-1] = "5"
 	text, err := os.ReadFile(data)
 	if err != nil {
 		t.Fatal(err)
@@ -200,7 +265,7 @@ func TestGatherRefuses(t *testing.T) {
 		{"missing", parts[:2], []string{"share 3/3 is missing: run the command again with --share 3/3"}},
 		{"doubled", append(parts, parts[0]), []string{parts[0] + ": share 1/3 is already there in " + parts[0]}},
 		{"other data", []string{parts[0], otherData, parts[2]}, []string{otherData + ": foreign part: data of SHA-256 ", "share 2/3 is missing"}},
-		{"other seed", []string{parts[0], parts[1], with(3, "--seed", "6")}, []string{"foreign part: seed 6, but 5 in " + parts[0]}},
+		{"other seed", []string{parts[0], parts[1], seeded}, []string{"foreign part: seed 6, but 5 in " + parts[0]}},
 		{"other plan", []string{parts[0], parts[1], with(3, "--keep", "80%")}, []string{"foreign part: plan (", "--keep=80%"}},
 		{"other kind", []string{parts[0], bent(`"kind":"compare"`, `"kind":"bootstrap"`), parts[2]}, []string{"foreign part: kind bootstrap, but compare"}},
 		{"no part at all", []string{parts[0], published, parts[2]}, []string{published + ": not a usable part"}},
@@ -326,6 +391,7 @@ func TestGoldenShare(t *testing.T) {
 	command := []string{"--", "compare", "--data", "my drops.csv", "--variant", "soave; tune=threshold", "--nested"}
 	golden(t, "share-slurm.golden", do(t, append([]string{"share", "--engine", "slurm", "--cpus", "2", "--memory", "500"}, command...)...))
 	golden(t, "share-kubernetes.golden", do(t, append([]string{"share", "--engine", "kubernetes", "--image", "registry.example/limsup:1", "--claim", "drops"}, command...)...))
+	do(t, append([]string{"share", "--engine", "slurm", "--"}, "calibrate", "--data", "drops.csv", "--bootstrap", "1000")...)
 	file := filepath.Join(t.TempDir(), "job.sh")
 	do(t, append([]string{"share", "--engine", "slurm", "--cpus", "2", "--memory", "500", "--out", file}, command...)...)
 	text, err := os.ReadFile(file)
@@ -345,6 +411,10 @@ func TestBadShareCalls(t *testing.T) {
 		{"needs the command to divide", slurm},
 		{`"check" cannot be computed in shares`, append(slurm, "--", "check", "--data", "a.csv")},
 		{"did you mean compare?", append(slurm, "--", "compair", "--data", "a.csv")},
+		{"divided by the replicates of --bootstrap", append(slurm, "--", "calibrate", "--data", "a.csv")},
+		{"--share needs --bootstrap", []string{"calibrate", "--data", published, "--share", "1/3"}},
+		{"1 to 1000000 replicates", []string{"calibrate", "--data", published, "--share", "1/3", "--bootstrap", "0"}},
+		{"one of rows, fluid", []string{"calibrate", "--data", published, "--share", "1/3", "--bootstrap", "9", "--resample", "days"}},
 		{"limsup compare needs --data", append(slurm, "--", "compare")},
 		{"limsup compare has no flag --dat", append(slurm, "--", "compare", "--dat", "a.csv")},
 		{`"b.csv" is left over`, append(slurm, "--", "compare", "--data", "a.csv", "b.csv")},
