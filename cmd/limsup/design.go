@@ -115,7 +115,7 @@ func newDesign(c *cli.Context) (*campaignDesign, error) {
 
 // fromModel takes a calibrated model as it is; data beside it show what was measured.
 func (d *campaignDesign) fromModel(c *cli.Context, in *campaign.Input) error {
-	for _, f := range []string{"tune", "fix", "start", "bounds", "prior", "anchor", "noise", "restarts"} {
+	for _, f := range []string{"plan", "tune", "fix", "start", "bounds", "prior", "anchor", "noise", "restarts"} {
 		if c.IsSet(f) {
 			return &usageError{fmt.Sprintf("--model and --%s exclude each other: the model is taken as it is", f)}
 		}

@@ -274,7 +274,7 @@ func (p *Plan) campaign(plan fit.Plan, rows []truth, rng *rand.Rand) outcome {
 	out := outcome{}
 	m := c.Model()
 	for i := range c.Parameters {
-		if e := &c.Parameters[i]; e.AtBound != "" && e.Name != fit.Spread && e.Role == fit.RoleValue {
+		if e := &c.Parameters[i]; e.AtBound != "" && e.Name != fit.Spread && e.Name != fit.DegreesOfNoise && e.Role == fit.RoleValue {
 			out.atBound = true
 		}
 	}

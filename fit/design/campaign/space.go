@@ -14,7 +14,7 @@ import (
 type Parameter struct {
 	Label, Unit string
 	Value       float64
-	Spread      bool // a standard deviation of the readings, not a location
+	Spread      bool // a property of the scatter of the readings, not a location
 	// Assumed is set where no more than the bounds is known before.
 	Assumed       bool
 	Before, After float64 // standard uncertainty before and after the batch
@@ -50,7 +50,7 @@ func newSpace(m *fit.Model, c *fit.Calibration, fresh bool) *space {
 			continue
 		}
 		s.own[i] = len(s.params)
-		s.params = append(s.params, Parameter{Label: e.Label(), Unit: e.Unit, Value: e.Value, Spread: e.Name == fit.Spread})
+		s.params = append(s.params, Parameter{Label: e.Label(), Unit: e.Unit, Value: e.Value, Spread: e.Name == fit.Spread || e.Name == fit.DegreesOfNoise})
 	}
 	if fresh {
 		s.forget(c)
