@@ -81,5 +81,5 @@ func is[T error](err error) bool {
 // describe is the text of an error for a person: several lines where a file has
 // several problems, nothing twice, and nothing that steers a terminal.
 func describe(err error) string {
-	return visible(strings.TrimRight(err.Error(), "\n"))
+	return brief(visible(strings.TrimRight(err.Error(), "\n")))
 }

@@ -69,6 +69,9 @@ func (w *walker) keyValue(table string, e *unstable.Node) {
 }
 
 func (w *walker) value(path string, v *unstable.Node) {
+	if len(path) > longestPath {
+		return
+	}
 	it := v.Children()
 	switch v.Kind {
 	case unstable.InlineTable:
@@ -148,10 +151,18 @@ func (at positions) find(path string) position {
 	}
 }
 
-// join appends a key to a path.
+// longestPath bounds the paths that are told apart: no record nests so deep, and building
+// the paths of a text that does would take a time quadratic in its length.
+const longestPath = 1 << 10
+
+// join appends a key to a path. What lies deeper than longestPath shares the place of
+// what encloses it.
 func join(path, key string) string {
 	if path == "" {
 		return key
+	}
+	if len(path) > longestPath {
+		return path
 	}
 	return path + "." + key
 }
