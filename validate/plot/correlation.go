@@ -27,7 +27,7 @@ func Correlation(m *fit.Model) (*Figure, error) {
 		}
 	}
 	if len(known) < 2 {
-		return nil, &EmptyError{f.ID, m.Variant.Name(), nil}
+		return nil, &EmptyError{Figure: f.ID, About: m.Variant.Name(), Reason: "fewer than two estimates have an uncertainty"}
 	}
 	value := func(i, j int) float64 {
 		if i == j {

@@ -335,6 +335,9 @@ func TestWithoutData(t *testing.T) {
 	if in.Model, err = fit.Untuned(spinodal); err != nil {
 		t.Fatal(err)
 	}
+	if e, err := Embryo(in, State{}); err != nil || e.Check() != nil {
+		t.Errorf("embryo of a spinodal model: %v", err)
+	}
 	f, err := LimitMap(in)
 	if err != nil {
 		t.Fatal(err)

@@ -77,7 +77,7 @@ func Flux(in *Input, s State) (*Figure, error) {
 	}
 	from, err := ph.Fluid.KineticLimit(s.P, nucleation.Threshold(lo-8), 0)
 	if err != nil {
-		return nil, &EmptyError{f.ID, in.Record.Key, err}
+		return nil, &EmptyError{Figure: f.ID, About: in.Record.Key, Err: err}
 	}
 	end := 0.0
 	if x, err := ph.Fluid.KineticLimit(s.P, nucleation.Threshold(hi+4), 0); err == nil {
@@ -85,7 +85,7 @@ func Flux(in *Input, s State) (*Figure, error) {
 	} else if hasSpinodal {
 		end = spinodal * (1 - 1e-6)
 	} else {
-		return nil, &EmptyError{f.ID, in.Record.Key, err}
+		return nil, &EmptyError{Figure: f.ID, About: in.Record.Key, Err: err}
 	}
 	curve := Series{Name: "flux", Style: Style{Colour: Ink}}
 	for _, T := range linear(from.T, end, sweep) {
@@ -116,15 +116,25 @@ func Flux(in *Input, s State) (*Figure, error) {
 //
 // Errors: those of the physics.
 func Embryo(in *Input, s State) (*Figure, error) {
-	s, err := in.complete(s)
-	if err != nil {
-		return nil, err
-	}
 	q := fit.Query{Record: in.Record}
 	v := in.Model.Variant
 	v.Limit = fit.Kinetic
 	ph, err := fit.NewPhysics(v, in.Record, in.Model.Values(&q))
 	if err != nil {
+		return nil, err
+	}
+	if in.Model.Variant.Limit == fit.Spinodal && s.T == 0 {
+		// On the spinodal there is no barrier left; the usual threshold has one.
+		if s.P == 0 {
+			s.P = in.commonPressure()
+		}
+		l, err := ph.Fluid.KineticLimit(s.P, nucleation.Threshold(ph.Threshold), 0)
+		if err != nil {
+			return nil, err
+		}
+		s.T = l.T
+	}
+	if s, err = in.complete(s); err != nil {
 		return nil, err
 	}
 	e, err := ph.Fluid.Embryo(s.T, s.P)

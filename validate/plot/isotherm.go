@@ -29,7 +29,7 @@ func Isotherm(in *Input, s State) (*Figure, error) {
 		Title:   fmt.Sprintf("Isotherm of %s at %s K", Visible(in.Record.Key), fixed(s.T, 2)),
 		Caption: "Volume grows from left to right, from liquid to vapour. Under the binodal the saturated phases coexist at the pressure of the level line. The dashed stretches of the isotherm, between binodal and spinodal, are metastable: superheated liquid on the left, supersaturated vapour on the right. The dotted stretch, where pressure rises with volume, cannot exist."}
 	if !iso.Subcritical {
-		return nil, &EmptyError{f.ID, in.Record.Key, &eos.DomainError{Fluid: m.Fluid, Equation: m.Equation, Quantity: "binodal", Argument: "temperature", Value: s.T, Lo: m.MinT, Hi: m.Tc, Unit: "K"}}
+		return nil, &EmptyError{Figure: f.ID, About: in.Record.Key, Err: &eos.DomainError{Fluid: m.Fluid, Equation: m.Equation, Quantity: "binodal", Argument: "temperature", Value: s.T, Lo: m.MinT, Hi: m.Tc, Unit: "K"}}
 	}
 	top := 1.15 * m.Pc
 	bottom := math.Min(iso.Liquid.P, 0) - 0.02*m.Pc
@@ -138,7 +138,7 @@ func Potential(in *Input, s State) (*Figure, error) {
 		Title:   fmt.Sprintf("Chemical potential of %s at %s K", Visible(in.Record.Key), fixed(s.T, 2)),
 		Caption: "Of two phases at one pressure the one with the lower chemical potential is stable. The branches of liquid and vapour cross at saturation, the zero of the scale. Beyond the crossing each goes on as a metastable phase (dashed) up to its cusp, the spinodal; the arc between the cusps is unstable."}
 	if !iso.Subcritical {
-		return nil, &EmptyError{f.ID, in.Record.Key, &eos.DomainError{Fluid: m.Fluid, Equation: m.Equation, Quantity: "binodal", Argument: "temperature", Value: s.T, Lo: m.MinT, Hi: m.Tc, Unit: "K"}}
+		return nil, &EmptyError{Figure: f.ID, About: in.Record.Key, Err: &eos.DomainError{Fluid: m.Fluid, Equation: m.Equation, Quantity: "binodal", Argument: "temperature", Value: s.T, Lo: m.MinT, Hi: m.Tc, Unit: "K"}}
 	}
 	sat := &iso.Saturation
 	// As much of the stable branches as the metastable ones extend.

@@ -37,16 +37,17 @@ func (in *Input) mine(i int) bool {
 
 // EmptyError reports a figure without anything to draw.
 type EmptyError struct {
-	Figure, Fluid string
-	Err           error // why; may be nil
+	Figure, About string // the figure's id; the fluid or the model
+	Reason        string // why, if Err is nil
+	Err           error
 }
 
 func (e *EmptyError) Error() string {
-	s := fmt.Sprintf("figure %s: %s: nothing to draw", e.Figure, e.Fluid)
+	s := fmt.Sprintf("figure %s: %s: nothing to draw: ", e.Figure, e.About)
 	if e.Err != nil {
-		s += ": " + e.Err.Error()
+		return s + e.Err.Error()
 	}
-	return s
+	return s + e.Reason
 }
 
 // Unwrap returns the cause, if there is one.
@@ -144,7 +145,7 @@ func LimitMap(in *Input) (*Figure, error) {
 	whole.Series = append(whole.Series, Series{Name: "critical point", Shape: Points, X: []float64{m.Tc}, Y: []float64{m.Pc / mega},
 		Text: []string{fmt.Sprintf("critical point of the equation: %s K, %s MPa", fixed(m.Tc, 2), fixed(m.Pc/mega, 3))}, Style: Style{Colour: Ink, Marker: Plus}})
 	if whole.Series = dropEmpty(whole.Series); len(whole.Series) == 1 {
-		return nil, &EmptyError{f.ID, in.Record.Key, err}
+		return nil, &EmptyError{Figure: f.ID, About: in.Record.Key, Reason: "no line of the fluid could be computed", Err: err}
 	}
 	f.Panels = []Panel{whole}
 	if obs == nil || lo > hi {

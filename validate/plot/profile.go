@@ -33,7 +33,7 @@ func Profiles(c *fit.Calibration) (*Figure, error) {
 		}
 	}
 	if len(names) == 0 {
-		return nil, &EmptyError{f.ID, c.Plan.Variant.Name(), nil}
+		return nil, &EmptyError{Figure: f.ID, About: c.Plan.Variant.Name(), Reason: "no estimate of a location has an uncertainty"}
 	}
 	if len(names) > most {
 		f.Notes = append(f.Notes, fmt.Sprintf("The first %d of %d parameters are shown.", most, len(names)))
@@ -64,7 +64,7 @@ func Profiles(c *fit.Calibration) (*Figure, error) {
 			parabola, curve, points}})
 	}
 	if len(f.Panels) == 0 {
-		return nil, &EmptyError{f.ID, c.Plan.Variant.Name(), nil}
+		return nil, &EmptyError{Figure: f.ID, About: c.Plan.Variant.Name(), Reason: "no profile has three points"}
 	}
 	return f, nil
 }

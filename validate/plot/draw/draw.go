@@ -60,7 +60,7 @@ func Write(w io.Writer, f *figure.Figure, format string) error {
 	}
 	columns := min(2, len(f.Panels))
 	if columns == 0 {
-		return &figure.EmptyError{Figure: f.ID, Fluid: f.Title}
+		return &figure.EmptyError{Figure: f.ID, About: f.Title, Reason: "it has no panel"}
 	}
 	rows := (len(f.Panels) + columns - 1) / columns
 	legend := f.Legend()
