@@ -41,7 +41,7 @@ const (
 // blurred returns ln g and its first two derivatives in x. ρ ≥ 0.
 func blurred(x, ρ float64, intact bool) (ln, first, second float64) {
 	if ρ < 1e-6 { // the change of ln g is of the order of ρ²
-		e := math.Exp(math.Min(x, 700))
+		e := math.Exp(math.Min(x, 300))
 		if intact {
 			return -e, -e, -e
 		}
