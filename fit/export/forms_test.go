@@ -1,9 +1,12 @@
 package export
 
 import (
+	"bytes"
 	"errors"
 	"math"
 	"os"
+	"regexp"
+	"strconv"
 	"strings"
 	"testing"
 
@@ -101,3 +104,63 @@ func TestWriteErrors(t *testing.T) {
 type full struct{}
 
 func (full) Write([]byte) (int, error) { return 0, os.ErrClosed }
+
+// States that the other tests do not reach: strong tension, where the kinetic factor is
+// held, and so high a threshold that the sum over sizes begins at one molecule.
+func TestExtremes(t *testing.T) {
+	for _, tt := range []struct {
+		v         fit.Variant
+		threshold float64
+		pressures []float64
+	}{
+		{fit.Variant{}, 12, []float64{-3e7, -1e7, -6e6, -4e6}},
+		{fit.Variant{Kinetics: nucleation.Stepwise}, 12, []float64{-3e7, -1e7, -6e6, -4e6}},
+		{fit.Variant{Kinetics: nucleation.Stepwise}, 30, []float64{-1e7, -2e6, 0, 1e6}},
+		{fit.Variant{Kinetics: nucleation.Stepwise}, 35, []float64{-6e7, -3e7, 0}},
+	} {
+		m := calibrated(t, tt.v, 1)
+		m.Parameters[0].Value = tt.threshold
+		s, err := newSubject(m, Options{Records: records(t, "n-pentane", "water"), From: -1e8, To: 2e6})
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, r := range s.o.Records {
+			c, err := s.row(r)
+			if err != nil {
+				t.Fatal(err)
+			}
+			c[kernel.KHasU] = 1
+			for _, P := range tt.pressures {
+				want := s.at(r, P)
+				T, u, status := kernel.LimitTemperature(c, P)
+				if status != want.Status || status == kernel.Fine && !(math.Abs(T-want.T) <= kernelKelvin && math.Abs(u-want.U) <= kernelRelative*want.U) {
+					t.Errorf("%s, threshold %g, %s at %g Pa: %.12g K ± %.12g K, status %d; want %.12g K ± %.12g K, status %d",
+						m.Variant.Name(), tt.threshold, r.Key, P, T, u, status, want.T, want.U, want.Status)
+				}
+			}
+		}
+	}
+}
+
+// Whatever the tolerance, what is stated is within it.
+func TestToleranceIsKept(t *testing.T) {
+	c := modelCases(t)[4]
+	c.fluids = []string{"n-pentane"}
+	o := c.options(t)
+	pattern := regexp.MustCompile(`largest deviation from the model (\S+) K`)
+	for _, o.Tolerance = range []float64{0.5, 0.1, 0.05, 0.02, 0.005, 0.002, 1e-3, 5e-4, 1e-4} {
+		var b bytes.Buffer
+		if err := Write(&b, Series, c.model, o); err != nil {
+			t.Fatal(err)
+		}
+		found := pattern.FindAllStringSubmatch(strings.ReplaceAll(b.String(), "\n# ", " "), -1)
+		if len(found) != len(seriesColumns) {
+			t.Errorf("%d statements", len(found))
+		}
+		for _, f := range found {
+			if v, err := strconv.ParseFloat(f[1], 64); err != nil || v > o.Tolerance {
+				t.Errorf("stated %s K, tolerance %g K", f[1], o.Tolerance)
+			}
+		}
+	}
+}
