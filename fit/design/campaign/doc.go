@@ -14,9 +14,10 @@
 //
 // What is known before is the covariance of the model's calibration. Where that
 // says nothing – a fluid or method without a row in a model with values of its own
-// for each, parameters that the data do not tell apart – a parameter starts with
-// the standard deviation of a uniform distribution over its bounds, and a note
-// says so.
+// for each, parameters that the data do not tell apart, a plan from scratch – no more
+// is known than the bounds: the present uncertainty is that of a uniform distribution
+// over them, and a note says so. A batch is chosen so that its readings, not the
+// bounds, determine the parameters.
 //
 // Promised uncertainties hold for the parameters that the model has now (a locally
 // optimal design), for independent readings and for the stated uncertainties. An
