@@ -185,6 +185,7 @@ func functions() template.FuncMap {
 		"snake":   translate.Snake,
 		"decimal": translate.Decimal,
 		"quote":   func(s string) string { return fmt.Sprintf("%q", s) },
+		"single":  func(s string) string { return strings.ReplaceAll(s, "'", "''") }, // inside apostrophes
 		"inc":     func(i int) int { return i + 1 },
 		"list":    func(s ...string) []string { return s },
 		"wrap": func(lead string, width int, paragraphs []string) string {
