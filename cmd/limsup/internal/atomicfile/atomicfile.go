@@ -53,8 +53,12 @@ func Write(name string, fill func(w io.Writer) error) (err error) {
 			os.Remove(tmp.Name())
 		}
 	}()
-	b := bufio.NewWriter(tmp)
+	disk := &recorder{w: tmp}
+	b := bufio.NewWriter(disk)
 	if err := fill(b); err != nil {
+		if disk.err != nil { // however fill puts it
+			return fail(disk.err)
+		}
 		return err
 	}
 	for _, step := range []func() error{b.Flush, func() error { return tmp.Chmod(mode) }, tmp.Sync, tmp.Close} {
@@ -66,6 +70,20 @@ func Write(name string, fill func(w io.Writer) error) (err error) {
 		return fail(err)
 	}
 	return nil
+}
+
+// recorder keeps the first error of a writer.
+type recorder struct {
+	w   io.Writer
+	err error
+}
+
+func (r *recorder) Write(b []byte) (int, error) {
+	n, err := r.w.Write(b)
+	if err != nil && r.err == nil {
+		r.err = err
+	}
+	return n, err
 }
 
 // cause leaves out the name of the temporary file, which says nothing to a user and
@@ -87,8 +105,12 @@ func writeThrough(name string, fill func(w io.Writer) error) error {
 	if err != nil {
 		return &WriteError{name, cause(err)}
 	}
-	if err := fill(f); err != nil {
+	disk := &recorder{w: f}
+	if err := fill(disk); err != nil {
 		f.Close()
+		if disk.err != nil {
+			return &WriteError{name, cause(disk.err)}
+		}
 		return err
 	}
 	if err := f.Close(); err != nil {
