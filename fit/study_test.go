@@ -247,7 +247,7 @@ func TestCoverage(t *testing.T) {
 // pooled slope averages to the truth, and its root, the spread, within 10 %.
 func TestPooledSpread(t *testing.T) {
 	lib := library(t)
-	const τ = 0.02
+	const τ = 0.2 // 1 K, beside 0.34 K of the mean of three readings
 	keys := []string{"n-pentane", "benzene", "r-134a", "n-hexane", "n-heptane", "cyclohexane", "toluene", "diethyl-ether", "methanol", "propane", "n-butane", "isobutane"}
 	n := 40
 	if *study > 0 {
