@@ -271,7 +271,7 @@ func (d *campaignDesign) checkTable() *table.Table {
 		t.Notes = append(t.Notes, fmt.Sprintf("%d campaigns did not calibrate and are not counted; the first: %s.", c.Failed, c.FirstError))
 	}
 	if c.AtBound > 0 {
-		t.Notes = append(t.Notes, fmt.Sprintf("In %d campaigns a parameter stood at a bound.", c.AtBound))
+		t.Notes = append(t.Notes, fmt.Sprintf("In %d of the campaigns a parameter stood at a bound.", c.AtBound))
 	}
 	if d.Tell != nil {
 		t.Notes = append(t.Notes, fmt.Sprintf("The model was likelier than its rival in %.1f %% of the campaigns; the plan says %.1f %%.", 100*c.Right, 100*c.PromisedRight))
