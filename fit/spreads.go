@@ -58,6 +58,18 @@ func newLinearised(l *likelihood, theta []float64, active []int) (*linearised, e
 	return z, nil
 }
 
+// residual is that of a row at θ + δ.
+func (z *linearised) residual(i int) float64 {
+	r := z.r[i]
+	idx, d := &z.l.lay.index[i], &z.l.limit[i].d
+	for a := range idx {
+		if at := idx[a]; at >= 0 {
+			r -= derivative(d, a) * z.delta[at]
+		}
+	}
+	return r
+}
+
 // terms is −ln L at θ + δ.
 func (z *linearised) terms(psi []float64, derivatives bool) float64 {
 	l := z.l
@@ -69,15 +81,9 @@ func (z *linearised) terms(psi []float64, derivatives bool) float64 {
 	clearAll(grad, curv)
 	value := 0.0
 	noise := l.law(psi)
+	l.densities(&noise, z.residual, z.variance)
 	for i := range l.obs {
-		r := z.r[i]
-		idx, d := &l.lay.index[i], &l.limit[i].d
-		for a := range idx {
-			if at := idx[a]; at >= 0 {
-				r -= derivative(d, a) * z.delta[at]
-			}
-		}
-		d1 := l.density(&noise, i, r, z.variance[i])
+		d1 := &l.each[i]
 		value += d1.nll
 		if derivatives {
 			l.addRow(i, -d1.dr, d1.irr, grad, curv)
