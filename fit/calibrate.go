@@ -147,14 +147,14 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 		}
 	}
 	c := &Calibration{Plan: p, Data: d, Locations: len(lay.theta), References: lay.references}
-	first := leastsq.Settings{Starts: p.Restarts + 1, Seed: p.Seed, Local: true}
+	first := leastsq.Settings{Starts: p.Restarts + 1, Seed: p.Seed, Local: true, MaxIterations: mostSteps}
 	settings := first
 	c.theta, c.psi = starts(lay.theta), starts(lay.psi)
 	if o.Warm != nil {
 		// Near an earlier answer a local search is enough.
 		o.Warm.seed(lay.theta, c.theta)
 		o.Warm.seed(lay.psi, c.psi)
-		settings = leastsq.Settings{Local: true}
+		settings = leastsq.Settings{Local: true, MaxIterations: mostSteps}
 	}
 	covPsi, err := c.alternate(lik, settings, o.Warm == nil)
 	for _, s := range []leastsq.Settings{first, {Starts: p.Restarts + 1, Seed: p.Seed}} {
@@ -267,7 +267,7 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings, cold
 			if cold && round == 0 && c.doubtful(lik, res) {
 				// A bound, or the spinodal, may have stopped the search on its way to a better
 				// place: look again from points spread over the bounds.
-				wide := leastsq.Settings{Starts: wideStarts, Seed: c.Plan.Seed, Local: true}
+				wide := leastsq.Settings{Starts: wideStarts, Seed: c.Plan.Seed, Local: true, MaxIterations: wideSteps}
 				if again, err := leastsq.Minimize(c.objective(lik, variance), wide); err == nil {
 					c.Evaluations += again.Evaluations
 					if again.Usable && again.Value < res.Value-1e-9*math.Abs(res.Value) {
@@ -283,7 +283,7 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings, cold
 			if !c.Usable {
 				return nil, &ConvergenceError{c.Plan.Variant.Name(), res.Reason, nil}
 			}
-			settings = leastsq.Settings{Local: true}
+			settings = leastsq.Settings{Local: true, MaxIterations: mostSteps}
 		} else {
 			c.Reason = "no location is free; only the spread was estimated"
 		}
@@ -325,8 +325,15 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings, cold
 	}
 }
 
-// wideStarts is the number of starts of the second look at a doubtful optimum.
-const wideStarts = 12
+// wideStarts is the number of starts of the second look at a doubtful optimum, and
+// wideSteps what each of them may take: a search that is on its way to a better place
+// needs some twenty steps, one that creeps along the edge of the spinodal takes thousands
+// to no end. Later rounds go on from the best of them, with mostSteps each.
+const (
+	wideStarts = 12
+	wideSteps  = 40
+	mostSteps  = 200
+)
 
 // doubtful tells an optimum at which a parameter stands at a bound or the spinodal
 // stands in for a kinetic limit.
