@@ -13,10 +13,12 @@ import (
 )
 
 // Jobs is a comparison laid out as independent tunings in a fixed order, so that some
-// can be done here and others elsewhere. For each member in turn: the tuning to all
+// can be done here and others elsewhere. For each member there are: the tuning to all
 // rows; the tunings without each fold; where the choice is nested, the tunings without
-// each two folds. A job needs the tuning of its member to all rows as a start, and
-// repeats it where it is not at hand.
+// each two folds. They are dealt in rounds, one job of each member after the other,
+// because one member may take as long as all others together: so any stretch of the
+// list holds its share of each. A job needs the tuning of its member to all rows as a
+// start, and Run repeats it once for each member that it meets.
 type Jobs struct {
 	c       *Comparison
 	o       CompareOptions
@@ -77,18 +79,24 @@ func NewJobs(set *measure.Set, lib *fluid.Library, o CompareOptions) (*Jobs, err
 	}
 	w := &Jobs{c: c, o: o, members: members}
 	folds := len(c.Folds.Names)
-	for m := range members {
-		w.list = append(w.list, job{m, -1, -1})
-		for k := range folds {
-			w.list = append(w.list, job{m, -1, k})
-		}
-		if !o.Nested || members[m].UntunedOnly || folds < 3 {
-			continue
-		}
-		for k := range folds {
-			for j := range k {
+	round := func(j, k int, takesPart func(m *member) bool) {
+		for m := range members {
+			if takesPart(&members[m]) {
 				w.list = append(w.list, job{m, j, k})
 			}
+		}
+	}
+	all := func(*member) bool { return true }
+	round(-1, -1, all)
+	for k := range folds {
+		round(-1, k, all)
+	}
+	if !o.Nested || folds < 3 {
+		return w, nil
+	}
+	for k := range folds {
+		for j := range k {
+			round(j, k, func(m *member) bool { return !m.UntunedOnly })
 		}
 	}
 	return w, nil

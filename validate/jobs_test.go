@@ -153,8 +153,8 @@ func TestFinishRefuses(t *testing.T) {
 	}{
 		{"one fewer", "10 for 11 jobs", func(r []JobResult) []JobResult { return r[1:] }},
 		{"empty", "result of job 3: it is of another kind", func(r []JobResult) []JobResult { r[2] = JobResult{}; return r }},
-		{"exchanged", "result of job 1: it is of another kind", func(r []JobResult) []JobResult { r[0], r[1] = r[1], r[0]; return r }},
-		{"no calibration", "result of job 5: it is of another kind", func(r []JobResult) []JobResult { r[4] = JobResult{Tuned: &TunedRows{}}; return r }},
+		{"exchanged", "result of job 2: it is of another kind", func(r []JobResult) []JobResult { r[1], r[2] = r[2], r[1]; return r }},
+		{"no calibration", "result of job 2: it is of another kind", func(r []JobResult) []JobResult { r[1] = JobResult{Tuned: &TunedRows{}}; return r }},
 		{"a residual lost", "5 residuals and 6 leverages of 6 rows", func(r []JobResult) []JobResult {
 			x := *r[0].Tuned
 			x.Residual = x.Residual[1:]
@@ -169,9 +169,9 @@ func TestFinishRefuses(t *testing.T) {
 			return r
 		}},
 		{"a column short", "a column of 0 values for the 2 rows", func(r []JobResult) []JobResult {
-			x := *r[1].Left
+			x := *r[2].Left
 			x.Variance = nil
-			r[1].Left = &x
+			r[2].Left = &x
 			return r
 		}},
 		{"a pair short", "1 residuals for the 4 rows of two folds", func(r []JobResult) []JobResult { r[10].Nested = r[10].Nested[:1]; return r }},

@@ -50,8 +50,8 @@ func (s Share) String() string { return fmt.Sprintf("%d/%d", s.K, s.N) }
 
 // Range gives the jobs of the share, from first up to but not including last, of jobs
 // numbered from 0. The shares cover all jobs without overlap, and their sizes differ
-// by one at most. Neighbouring jobs stay together, because they have the most in
-// common; where there are more shares than jobs, some are empty.
+// by one at most. Neighbouring jobs stay together; where there are more shares than jobs,
+// some are empty.
 func (s Share) Range(jobs int) (first, last int) {
 	n := int64(jobs)
 	return int(n * int64(s.K-1) / int64(s.N)), int(n * int64(s.K) / int64(s.N))
