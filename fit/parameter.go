@@ -2,6 +2,7 @@ package fit
 
 import (
 	"fmt"
+	"math"
 	"slices"
 	"strings"
 )
@@ -232,6 +233,9 @@ func (p Plan) Complete() (Plan, error) {
 		if _, err := parameterOf(b.Name, &p.Variant); err != nil {
 			return p, err
 		}
+		if math.IsInf(b.Lower, 0) || math.IsInf(b.Upper, 0) {
+			return p, &OptionError{"bounds of " + b.Name, fmt.Sprintf("%.10g..%.10g", b.Lower, b.Upper), "finite numbers"}
+		}
 		if !(b.Lower < b.Upper) {
 			return p, &OptionError{"bounds of " + b.Name, fmt.Sprintf("%.10g..%.10g", b.Lower, b.Upper), "the lower bound below the upper one"}
 		}
@@ -243,8 +247,8 @@ func (p Plan) Complete() (Plan, error) {
 		if _, err := parameterOf(r.Name, &p.Variant); err != nil {
 			return p, err
 		}
-		if !(r.Spread > 0) {
-			return p, &OptionError{"prior of " + r.Name, fmt.Sprintf("%.10g", r.Spread), "a standard deviation > 0"}
+		if !(r.Spread > 0 && math.Abs(r.Mean) <= math.MaxFloat64 && r.Spread <= math.MaxFloat64) {
+			return p, &OptionError{"prior of " + r.Name, fmt.Sprintf("%.10g+-%.10g", r.Mean, r.Spread), "finite numbers and a standard deviation > 0"}
 		}
 		if r.Name == Spread || r.Name == DegreesOfNoise {
 			return p, &OptionError{"prior of " + r.Name, fmt.Sprintf("%.10g", r.Mean), "a prior on another parameter; bound this one instead"}

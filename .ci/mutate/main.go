@@ -69,6 +69,13 @@ func main() {
 	}
 }
 
+// test runs the tests of a package, "./fit", or some of them, "./fit:Noise|Likelihood".
+func test(what string, flags ...string) ([]byte, error) {
+	folder, some, _ := strings.Cut(what, ":")
+	args := append([]string{"test", "-vet=off", "-run", some}, flags...)
+	return exec.Command("go", append(args, folder)...).CombinedOutput()
+}
+
 // sound runs the tests without any breakage: one that fails anyway catches nothing.
 func sound(list []mutation, only int) error {
 	seen := map[string]bool{}
@@ -78,7 +85,7 @@ func sound(list []mutation, only int) error {
 				continue
 			}
 			seen[p] = true
-			if out, err := exec.Command("go", "test", "-vet=off", p).CombinedOutput(); err != nil {
+			if out, err := test(p); err != nil {
 				return fmt.Errorf("the tests fail without a breakage: %s", out)
 			}
 		}
@@ -133,11 +140,12 @@ func try(dir string, m mutation) (string, error) {
 	if err := os.WriteFile(overlay, text, 0o644); err != nil {
 		return "", err
 	}
-	if out, err := exec.Command("go", append([]string{"build", "-overlay", overlay}, m.packages...)...).CombinedOutput(); err != nil {
-		return "", fmt.Errorf("does not compile: %s", out)
-	}
 	for _, p := range m.packages {
-		out, err := exec.Command("go", "test", "-vet=off", "-failfast", "-overlay", overlay, p).CombinedOutput()
+		folder, _, _ := strings.Cut(p, ":")
+		if out, err := exec.Command("go", "build", "-overlay", overlay, folder).CombinedOutput(); err != nil {
+			return "", fmt.Errorf("does not compile: %s", out)
+		}
+		out, err := test(p, "-failfast", "-overlay", overlay)
 		if err == nil {
 			continue
 		}

@@ -62,7 +62,7 @@ func parseBadCase(text string) (c badCase, head string, err error) {
 }
 
 // fewestBadCases keeps the collection from shrinking unseen.
-const fewestBadCases = 100
+const fewestBadCases = 200
 
 // TestBadInputs gives the program every input of testdata/bad: files, models and
 // command lines that are wrong, or that can be read and look wrong. The answer is
@@ -130,7 +130,7 @@ func TestBadInputs(t *testing.T) {
 			}
 		})
 	}
-	for _, kind := range []string{"data", "doubt", "fluid", "model", "call"} {
+	for _, kind := range []string{"data", "doubt", "fluid", "model", "plan", "call"} {
 		t.Logf("%s: %d", kind, kinds[kind])
 		if kinds[kind] == 0 {
 			t.Errorf("no bad input of the kind %q", kind)

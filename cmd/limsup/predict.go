@@ -12,6 +12,7 @@ import (
 	"limsup/data/quantity"
 	"limsup/eos"
 	"limsup/eos/nucleation"
+	"limsup/eos/tension"
 	"limsup/fit"
 )
 
@@ -131,6 +132,7 @@ func errorKind(err error) string {
 		{"not metastable", is[*nucleation.NotMetastableError]},
 		{"outside the domain", is[*eos.DomainError]},
 		{"outside the range of a correlation", is[*fluid.RangeError]},
+		{"no surface tension", is[*tension.NonPositiveError]},
 		{"no such phase", is[*eos.PhaseError]},
 		{"property not available", is[*fit.UnavailableError]},
 		{"not converged", func(err error) bool {

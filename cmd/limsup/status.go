@@ -50,7 +50,7 @@ func status(err error) int {
 	case errors.Is(err, context.Canceled):
 		return statusInternal
 	case is[*noAnswerError](err), is[*nucleation.NoLimitError](err), is[*nucleation.NotMetastableError](err),
-		is[*nucleation.ConvergenceError](err), is[*nucleation.StateError](err), is[*eos.ConvergenceError](err),
+		is[*nucleation.ConvergenceError](err), is[*nucleation.StateError](err), is[*tension.NonPositiveError](err), is[*eos.ConvergenceError](err),
 		is[*eos.PhaseError](err), is[*fit.ConvergenceError](err):
 		return statusNoAnswer
 	case is[*usageError](err), is[*measure.Problem](err), is[measure.Problems](err), is[*quantity.Error](err),

@@ -62,6 +62,7 @@ func (e *StateError) Error() string {
 // ConvergenceError reports a search for a limit that ended without an answer.
 type ConvergenceError struct {
 	Fluid      string
+	Equation   string  // of state, or "correlation"
 	Given      float64 // Pa, or K with AtT
 	AtT        bool
 	Lo, Hi     float64 // bracket left, K or Pa
@@ -74,6 +75,6 @@ func (e *ConvergenceError) Error() string {
 	if e.AtT {
 		given, unit = unit, given
 	}
-	return fmt.Sprintf("kinetic limit of %s at %.10g %s: not converged after %d steps, bracket %.10g to %.10g %s, ln J off by %.3g",
-		e.Fluid, e.Given, given, e.Iterations, e.Lo, e.Hi, unit, e.Residual)
+	return fmt.Sprintf("kinetic limit of %s (%s) at %.10g %s: not converged after %d steps, bracket %.10g to %.10g %s, ln J off by %.3g",
+		e.Fluid, e.Equation, e.Given, given, e.Iterations, e.Lo, e.Hi, unit, e.Residual)
 }

@@ -194,10 +194,10 @@ func TestErrorTexts(t *testing.T) {
 		{&NoLimitError{Fluid: "water", Given: 400, AtT: true, Threshold: 12, End: -1e6},
 			"no kinetic limit of water at 400 K: log10 J* = 12 is not reached up to the end of the properties at -1000000 Pa; the flux is zero there"},
 		{&StateError{"water", 400, 1e5, "a reason"}, "flux of water at 400 K and 100000 Pa: a reason"},
-		{&ConvergenceError{Fluid: "water", Given: 400, AtT: true, Lo: 1, Hi: 2, Residual: 0.5, Iterations: 9},
-			"kinetic limit of water at 400 K: not converged after 9 steps, bracket 1 to 2 Pa, ln J off by 0.5"},
-		{&ConvergenceError{Fluid: "water", Given: 1e5, Lo: 1, Hi: 2, Residual: 0.5, Iterations: 9},
-			"kinetic limit of water at 100000 Pa: not converged after 9 steps, bracket 1 to 2 K, ln J off by 0.5"},
+		{&ConvergenceError{Fluid: "water", Equation: "soave", Given: 400, AtT: true, Lo: 1, Hi: 2, Residual: 0.5, Iterations: 9},
+			"kinetic limit of water (soave) at 400 K: not converged after 9 steps, bracket 1 to 2 Pa, ln J off by 0.5"},
+		{&ConvergenceError{Fluid: "water", Equation: "soave", Given: 1e5, Lo: 1, Hi: 2, Residual: 0.5, Iterations: 9},
+			"kinetic limit of water (soave) at 100000 Pa: not converged after 9 steps, bracket 1 to 2 K, ln J off by 0.5"},
 	} {
 		if got := c.err.Error(); got != c.want {
 			t.Errorf("%T: %q, want %q", c.err, got, c.want)

@@ -111,7 +111,8 @@ func (s *secant) slope(t *Target, x, y, given float64) float64 {
 //
 // Errors: *NoLimitError when J stays below J* up to the spinodal;
 // *eos.DomainError for P at or above the critical pressure, or a target that is not
-// a number; *ConvergenceError.
+// a number; *StateError when J exceeds J*, or no liquid is left, at the cold end of the properties;
+// *ConvergenceError.
 func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) {
 	if err := f.checkTarget(t); err != nil {
 		return Limit{}, err
@@ -195,11 +196,14 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 			}
 		}
 		if hi-lo <= 4e-15*hi {
-			return Limit{}, &ConvergenceError{Fluid: f.name, Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
+			if lo == f.tlo {
+				return Limit{}, &StateError{f.name, f.tlo, P, "the target is exceeded, or there is no liquid, at the coldest temperature for which properties are known already"}
+			}
+			return Limit{}, &ConvergenceError{Fluid: f.name, Equation: f.source(), Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
 		}
 		T = next
 	}
-	return Limit{}, &ConvergenceError{Fluid: f.name, Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
+	return Limit{}, &ConvergenceError{Fluid: f.name, Equation: f.source(), Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
 }
 
 // psiAt is psi at a state of its own, NaN where there is none.

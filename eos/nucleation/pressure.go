@@ -101,9 +101,9 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 			}
 		}
 		if w := hi - lo; w <= 4e-15*math.Max(math.Abs(lo), math.Abs(hi)) && !math.IsInf(w, 1) {
-			return Limit{}, &ConvergenceError{Fluid: f.name, Given: T, AtT: true, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
+			return Limit{}, &ConvergenceError{Fluid: f.name, Equation: f.source(), Given: T, AtT: true, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
 		}
 		P = next
 	}
-	return Limit{}, &ConvergenceError{Fluid: f.name, Given: T, AtT: true, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
+	return Limit{}, &ConvergenceError{Fluid: f.name, Equation: f.source(), Given: T, AtT: true, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
 }

@@ -50,6 +50,7 @@ import (
 	"fmt"
 	"io"
 	"regexp"
+	"slices"
 	"strings"
 
 	"github.com/pelletier/go-toml/v2"
@@ -146,19 +147,24 @@ func Read(r io.Reader, name string) (p fit.Plan, hasSeed bool, err error) {
 		return p, false, Problems{{name, 1, fmt.Sprintf("larger than %d bytes", mostBytes)}}
 	}
 	var f file
-	if err := toml.NewDecoder(bytes.NewReader(text)).DisallowUnknownFields().Decode(&f); err != nil {
-		return p, false, syntax(err, name)
-	}
 	c := &checker{name: name, lines: strings.Split(string(text), "\n")}
+	if err := toml.NewDecoder(bytes.NewReader(text)).DisallowUnknownFields().Decode(&f); err != nil {
+		c.problems = syntax(err, name)
+		f = file{}
+		if err := toml.Unmarshal(text, &f); err != nil { // not only keys that are unknown
+			return p, false, c.problems
+		}
+	}
 	p = c.plan(&f)
 	if len(c.problems) > 0 {
+		slices.SortStableFunc(c.problems, func(a, b *Problem) int { return a.Line - b.Line })
 		return fit.Plan{}, false, c.problems
 	}
 	return p, f.Search.Seed != nil, nil
 }
 
 // syntax turns errors of the TOML reader into problems.
-func syntax(err error, name string) error {
+func syntax(err error, name string) Problems {
 	var strict *toml.StrictMissingError
 	var one *toml.DecodeError
 	switch {
@@ -175,9 +181,29 @@ func syntax(err error, name string) error {
 		if key != "" {
 			key += ": "
 		}
+		if kind := wrongKind.FindStringSubmatch(one.Error()); kind != nil { // without the names of Go types
+			return Problems{{name, line, key + "found TOML " + strings.ToLower(kind[1]) + ", want " + goKinds(kind[2])}}
+		}
 		return Problems{{name, line, key + strings.TrimPrefix(one.Error(), "toml: ")}}
 	}
 	return Problems{{name, 1, strings.TrimPrefix(err.Error(), "toml: ")}}
+}
+
+var wrongKind = regexp.MustCompile(`cannot decode TOML (\w+) into .* of type (\S+)$`)
+
+// goKinds names a type of Go as the file knows it.
+func goKinds(t string) string {
+	switch t = strings.TrimLeft(t, "*"); {
+	case strings.HasPrefix(t, "int"), strings.HasPrefix(t, "uint"):
+		return "a whole number"
+	case strings.HasPrefix(t, "float"):
+		return "a number"
+	case t == "bool":
+		return "true or false"
+	case t == "string":
+		return "text"
+	}
+	return "a table"
 }
 
 type checker struct {
