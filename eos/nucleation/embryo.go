@@ -152,7 +152,11 @@ func (e *Embryo) count(inside, outside float64) bool {
 // radius r in m with the pressure and the tension of the critical one. It rises
 // from zero to its maximum ΔG* at r*, and falls through zero at (3/2)r*.
 func (e *Embryo) FreeEnergy(r float64) float64 {
-	return 4 * math.Pi * r * r * (e.Tension - r*(e.Pressure-e.P)/3)
+	d := e.Tension - r*(e.Pressure-e.P)/3
+	if math.Abs(d) < 8*0x1p-52*e.Tension {
+		d = 0 // at 3/2 of the critical radius the terms cancel, and what is left is the rounding of a processor
+	}
+	return 4 * math.Pi * r * r * d
 }
 
 // FreeEnergySlopes are dΔG/dr in N and d²ΔG/dr² in N/m.
