@@ -51,7 +51,9 @@ func calibrateCommand() *cli.Command {
 			if divided {
 				return writeBootstrapPart(c, part, set, lib, plan)
 			}
+			bar := startProgress(c, "calibrating")
 			r, err := calibrate(set, lib, plan, c.String("folds"))
+			bar.Stop()
 			if err != nil {
 				return err
 			}

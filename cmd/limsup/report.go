@@ -28,11 +28,15 @@ func reportCommand() *cli.Command {
 			if err := noArguments(c); err != nil {
 				return err
 			}
+			bar := startProgress(c, "calibrating for the report")
 			v, err := newValidation(c)
+			bar.Stop()
 			if err != nil {
 				return err
 			}
+			bar = startProgress(c, "drawing the report")
 			r, err := newReport(c, v)
+			bar.Stop()
 			if err != nil {
 				return err
 			}

@@ -27,7 +27,9 @@ func validateCommand() *cli.Command {
 			if err := begin(c); err != nil {
 				return err
 			}
+			bar := startProgress(c, "validating")
 			v, err := newValidation(c)
+			bar.Stop()
 			if err != nil {
 				return err
 			}
