@@ -84,6 +84,19 @@ func CrossValidate(d *fit.Data, p fit.Plan, f *Folds, warm *fit.Calibration) (*C
 	return crossValidate(context.Background(), d, p, f, warm, func() {})
 }
 
+// CrossValidateTelling is CrossValidate that tells how many folds are done, from one
+// goroutine at a time.
+func CrossValidateTelling(d *fit.Data, p fit.Plan, f *Folds, warm *fit.Calibration, progress func(done, total int)) (*CrossValidation, error) {
+	var mu sync.Mutex
+	done := 0
+	return crossValidate(context.Background(), d, p, f, warm, func() {
+		mu.Lock()
+		defer mu.Unlock()
+		done++
+		progress(done, len(f.Names))
+	})
+}
+
 // crossValidate is CrossValidate that can be stopped and calls tick after each fold.
 func crossValidate(ctx context.Context, d *fit.Data, p fit.Plan, f *Folds, warm *fit.Calibration, tick func()) (*CrossValidation, error) {
 	untuned, err := fit.Untuned(p.Variant, p.Fixed...)

@@ -52,7 +52,7 @@ func calibrateCommand() *cli.Command {
 				return writeBootstrapPart(c, part, set, lib, plan)
 			}
 			bar := startProgress(c, "calibrating")
-			r, err := calibrate(set, lib, plan, c.String("folds"))
+			r, err := calibrate(set, lib, plan, c.String("folds"), bar.Set)
 			bar.Stop()
 			if err != nil {
 				return err

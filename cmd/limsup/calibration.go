@@ -13,7 +13,7 @@ import (
 )
 
 // calibrate runs the main job: prepare, tune, cross-validate, side effects.
-func calibrate(set *measure.Set, lib *fluid.Library, plan fit.Plan, folds string) (*calibration, error) {
+func calibrate(set *measure.Set, lib *fluid.Library, plan fit.Plan, folds string, progress func(done, total int)) (*calibration, error) {
 	d, err := fit.Prepare(set, lib, plan)
 	if err != nil {
 		return nil, err
@@ -36,7 +36,7 @@ func calibrate(set *measure.Set, lib *fluid.Library, plan fit.Plan, folds string
 	}
 	f, err := validate.NewFolds(folds, d.Observations, plan.Seed)
 	if err == nil {
-		r.cv, err = validate.CrossValidate(d, plan, f, c)
+		r.cv, err = validate.CrossValidateTelling(d, plan, f, c, progress)
 	}
 	if err != nil {
 		// A fold that leaves too little behind is no fault of the calibration.

@@ -77,7 +77,10 @@ func figureOf(c *cli.Context, kind string) (*plot.Figure, error) {
 	var v *validation
 	var err error
 	if len(c.StringSlice("data")) > 0 {
-		if v, err = newValidation(c); err != nil {
+		bar := startProgress(c, "calibrating for the figure")
+		v, err = newValidation(c, bar.Set)
+		bar.Stop()
+		if err != nil {
 			return nil, err
 		}
 	}

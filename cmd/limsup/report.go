@@ -29,13 +29,13 @@ func reportCommand() *cli.Command {
 				return err
 			}
 			bar := startProgress(c, "calibrating for the report")
-			v, err := newValidation(c)
+			v, err := newValidation(c, bar.Set)
 			bar.Stop()
 			if err != nil {
 				return err
 			}
 			bar = startProgress(c, "drawing the report")
-			r, err := newReport(c, v)
+			r, err := newReport(c, v, bar.Set)
 			bar.Stop()
 			if err != nil {
 				return err
@@ -57,7 +57,7 @@ func reportCommand() *cli.Command {
 }
 
 // newReport gathers what the page shows.
-func newReport(c *cli.Context, v *validation) (*report.Report, error) {
+func newReport(c *cli.Context, v *validation, progress func(done, total int)) (*report.Report, error) {
 	r := &report.Report{Assessment: v.Assessment, Calibration: v.calibration, NoCV: trimReason(v.noCV), Seed: c.Uint64("seed"), Version: version()}
 	noProfile := "the model was taken as it is, so that nothing was tuned whose likelihood could be profiled"
 	if name := c.String("model"); name != "" {
@@ -67,7 +67,7 @@ func newReport(c *cli.Context, v *validation) (*report.Report, error) {
 		}
 		r.Stored, r.Seed = file.Verdict, file.Seed
 		if v.allSeen() {
-			again, why, err := repeat(c, v, file)
+			again, why, err := repeat(c, v, file, progress)
 			if err != nil {
 				return nil, err
 			}
@@ -107,7 +107,7 @@ func (v *validation) allSeen() bool {
 // repeat tunes again what a model file was tuned to, as far as the file tells: its
 // parameters, bounds, settings, noise and references, not priors and anchors. If the
 // estimates come out otherwise, why says so.
-func repeat(c *cli.Context, v *validation, file *modelfile.File) (again *validation, why string, err error) {
+func repeat(c *cli.Context, v *validation, file *modelfile.File, progress func(done, total int)) (again *validation, why string, err error) {
 	if len(file.Inputs) != len(v.Data.Files) {
 		return nil, "the model was calibrated on further files, so that its tuning cannot be repeated here", nil
 	}
@@ -125,7 +125,7 @@ func repeat(c *cli.Context, v *validation, file *modelfile.File) (again *validat
 	if !sameEstimates(v.Model.Parameters, cal.Parameters) {
 		return nil, "the tuning cannot be repeated from the model file alone: with its parameters and bounds, but without priors or anchors, the estimates differ", nil
 	}
-	cv, noCV, err := crossValidation(v.Data, plan, c.String("folds"), cal)
+	cv, noCV, err := crossValidation(v.Data, plan, c.String("folds"), cal, progress)
 	if err != nil {
 		return nil, "", err
 	}

@@ -28,7 +28,7 @@ func validateCommand() *cli.Command {
 				return err
 			}
 			bar := startProgress(c, "validating")
-			v, err := newValidation(c)
+			v, err := newValidation(c, bar.Set)
 			bar.Stop()
 			if err != nil {
 				return err
@@ -60,7 +60,7 @@ type validation struct {
 }
 
 // newValidation refits, or predicts with a given model.
-func newValidation(c *cli.Context) (*validation, error) {
+func newValidation(c *cli.Context, progress func(done, total int)) (*validation, error) {
 	terms := c.StringSlice("tune")
 	none := len(terms) == 1 && terms[0] == "none"
 	if name := c.String("model"); name != "" || none {
@@ -91,7 +91,7 @@ func newValidation(c *cli.Context) (*validation, error) {
 	if err != nil {
 		return nil, withExclusions(err, d)
 	}
-	cv, noCV, err := crossValidation(d, plan, c.String("folds"), cal)
+	cv, noCV, err := crossValidation(d, plan, c.String("folds"), cal, progress)
 	if err != nil {
 		return nil, err
 	}
@@ -100,7 +100,7 @@ func newValidation(c *cli.Context) (*validation, error) {
 
 // crossValidation uses the folds asked for, or the usual ones as far as the data allow:
 // without folds given, data that cannot be divided are no error, and reason says so.
-func crossValidation(d *fit.Data, plan fit.Plan, folds string, c *fit.Calibration) (cv *validate.CrossValidation, reason string, err error) {
+func crossValidation(d *fit.Data, plan fit.Plan, folds string, c *fit.Calibration, progress func(done, total int)) (cv *validate.CrossValidation, reason string, err error) {
 	explicit := folds != ""
 	if !explicit {
 		folds = validate.DefaultFolds(d.Observations)
@@ -110,7 +110,7 @@ func crossValidation(d *fit.Data, plan fit.Plan, folds string, c *fit.Calibratio
 	}
 	f, err := validate.NewFolds(folds, d.Observations, plan.Seed)
 	if err == nil {
-		cv, err = validate.CrossValidate(d, plan, f, c)
+		cv, err = validate.CrossValidateTelling(d, plan, f, c, progress)
 	}
 	var few *fit.TooFewError
 	var option *fit.OptionError
