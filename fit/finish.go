@@ -25,7 +25,7 @@ func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense) error {
 		lik.misfit = lik.misfitOf(&noise, variance, p)
 	}
 	curv := mat.NewSymDense(max(p, 1), nil)
-	value, err := lik.terms(c.theta, c.psi, variance, make([]float64, p), curv)
+	value, err := lik.terms(c.theta, c.psi, variance, make([]float64, p), curv, expected)
 	if err != nil {
 		return err
 	}
@@ -160,7 +160,7 @@ func (c *Calibration) satterthwaite(lik *likelihood, active []int, covPsi *mat.S
 			psi := append([]float64(nil), c.psi...)
 			psi[j] += s
 			curv := mat.NewSymDense(max(p, 1), nil)
-			if _, err := lik.terms(c.theta, psi, lik.variances(psi, nil), make([]float64, p), curv); err != nil {
+			if _, err := lik.terms(c.theta, psi, lik.variances(psi, nil), make([]float64, p), curv, expected); err != nil {
 				return // cannot be: θ was evaluated
 			}
 			diag[side] = inverseDiagonal(curv, active)

@@ -73,7 +73,25 @@ type density struct {
 	nll    float64
 	dr, dv float64 // ∂nll/∂r, ∂nll/∂v
 	irr    float64 // information about r: ∂²nll/∂r² or its expectation, ≥ 0
+	hrr    float64 // ∂²nll/∂r² itself, which is negative in the tails of Student's law
 	ivv    float64 // information about v; not of survival rows
+}
+
+// curvature chooses the second derivatives of −ln L: the expected ones are what the
+// data tell, and never negative; with the observed ones Newton's method converges
+// quadratically.
+type curvature int
+
+const (
+	expected curvature = iota
+	observed
+)
+
+func (d *density) curvature(k curvature) float64 {
+	if k == observed {
+		return d.hrr
+	}
+	return d.irr
 }
 
 // law is a noise with all that its densities share.
@@ -109,6 +127,7 @@ func (n *law) of(r, v float64, intact bool) density {
 			dr:  w * r,
 			dv:  0.5/v - 0.5*w*r*r/v,
 			irr: (ν + 1) / ((ν + 3) * v),
+			hrr: w - 2*w*r*r/(ν*v+r*r),
 			ivv: 0.5 * ν / ((ν + 3) * v * v),
 		}
 	case intact:
@@ -119,6 +138,7 @@ func (n *law) of(r, v float64, intact bool) density {
 			dr:  r / v,
 			dv:  0.5/v - 0.5*r*r/(v*v),
 			irr: 1 / v,
+			hrr: 1 / v,
 			ivv: 0.5 / (v * v),
 		}
 	}
@@ -130,7 +150,7 @@ func normalIntact(r, v float64) density {
 	z := -r / s
 	lnΦ, h := lnNormal(z)
 	c := h * (z + h) // −d²lnΦ/dz², between 0 and 1
-	return density{nll: -lnΦ, dr: h / s, dv: 0.5 * h * z / v, irr: c / v, ivv: 0.25 * c * z * z / (v * v)}
+	return density{nll: -lnΦ, dr: h / s, dv: 0.5 * h * z / v, irr: c / v, hrr: c / v, ivv: 0.25 * c * z * z / (v * v)}
 }
 
 // lnNormal returns ln Φ(z) and φ(z)/Φ(z) also far in the lower tail, where Φ
@@ -158,6 +178,7 @@ func (n *law) studentIntact(r, v float64) density {
 	F := t.CDF(z)
 	h := t.Prob(z) / F
 	// dlnprob/dz = −(ν+1)z/(ν+z²)
-	c := math.Max(0, h*((n.ν+1)*z/(n.ν+z*z)+h))
-	return density{nll: -math.Log(F), dr: h / s, dv: 0.5 * h * z / v, irr: c / v, ivv: 0.25 * c * z * z / (v * v)}
+	bend := h * ((n.ν+1)*z/(n.ν+z*z) + h)
+	c := math.Max(0, bend)
+	return density{nll: -math.Log(F), dr: h / s, dv: 0.5 * h * z / v, irr: c / v, hrr: bend / v, ivv: 0.25 * c * z * z / (v * v)}
 }

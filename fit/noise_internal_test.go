@@ -36,6 +36,11 @@ func TestNoiseSlopes(t *testing.T) {
 					if !(math.Abs(d.dv*v-dv) <= scale) {
 						t.Errorf("%s %g, intact %v, v = %g, z = %g: slope in v %.9g, differences %.9g", n.Kind, n.Degrees, intact, v, z, d.dv, dv/v)
 					}
+					slope := func(x float64) float64 { return l.of(r+x*s, v, intact).dr }
+					hrr := fd.Derivative(slope, 0, &fd.Settings{Formula: fd.Central, Step: h}) / s
+					if !(math.Abs(d.hrr-hrr)*v <= 4*scale) { // the third derivative of the slope is at most 24
+						t.Errorf("%s %g, intact %v, v = %g, z = %g: curvature in r %.9g, differences %.9g", n.Kind, n.Degrees, intact, v, z, d.hrr, hrr)
+					}
 					if !(d.irr >= 0 && d.ivv >= 0) {
 						t.Errorf("%s, intact %v, z = %g: information %g, %g", n.Kind, intact, z, d.irr, d.ivv)
 					}
@@ -128,7 +133,7 @@ func TestLikelihoodGradient(t *testing.T) {
 		lik.hold()
 		variance := lik.variances(psi, nil)
 		at := func(x []float64) float64 {
-			v, err := lik.terms(x, psi, variance, nil, nil)
+			v, err := lik.terms(x, psi, variance, nil, nil, observed)
 			if err != nil {
 				t.Fatal(err)
 			}
@@ -136,7 +141,7 @@ func TestLikelihoodGradient(t *testing.T) {
 		}
 		grad := make([]float64, len(theta))
 		curv := mat.NewSymDense(len(theta), nil)
-		value, err := lik.terms(theta, psi, variance, grad, curv)
+		value, err := lik.terms(theta, psi, variance, grad, curv, expected)
 		if err != nil {
 			t.Fatal(err)
 		}

@@ -2,7 +2,6 @@ package fit
 
 import (
 	"math"
-	"sync"
 
 	"gonum.org/v1/gonum/mat"
 )
@@ -23,7 +22,7 @@ type likelihood struct {
 	// As of the last hold: variance of each row from its stated uncertainties in K², and
 	// the steepness κ of the hazard of its sample in 1/K, 0 for rows without.
 	stated, steepness []float64
-	each              []density // of the last sum, one per row
+	blocks            []block // work space of addRows
 
 	// misfit divides the information of Student rows, see misfitOf; 0 is 1.
 	misfit float64
@@ -31,7 +30,7 @@ type likelihood struct {
 
 func newLikelihood(p *Plan, obs []Observation, lay *layout, workers int) (*likelihood, error) {
 	l := &likelihood{system: newSystem(p, obs, lay, workers), noise: p.Noise,
-		stated: make([]float64, len(obs)), steepness: make([]float64, len(obs)), each: make([]density, len(obs))}
+		stated: make([]float64, len(obs)), steepness: make([]float64, len(obs))}
 	var err error
 	l.anchors, err = newAnchors(p, obs, lay)
 	return l, err
@@ -59,24 +58,16 @@ func (l *likelihood) law(psi []float64) law {
 	return l.noise.law()
 }
 
-// terms is −ln L with its derivatives with respect to θ. grad and curv may be nil.
-func (l *likelihood) terms(theta, psi []float64, variance []float64, grad []float64, curv *mat.SymDense) (float64, error) {
+// terms is −ln L with its derivatives with respect to θ, the second ones of the given
+// kind. grad and curv may be nil.
+func (l *likelihood) terms(theta, psi []float64, variance []float64, grad []float64, curv *mat.SymDense, kind curvature) (float64, error) {
+
 	if err := l.evaluate(theta); err != nil {
 		return 0, err
 	}
 	clearAll(grad, curv)
-	value := 0.0
 	noise := l.law(psi)
-	l.densities(&noise, l.residual, variance)
-	for i := range l.obs {
-		d := &l.each[i]
-		value += d.nll
-		if grad == nil {
-			continue
-		}
-		// r = measured − T(θ) − offset
-		l.addRow(i, -d.dr, d.irr, grad, curv)
-	}
+	value := l.addRows(&noise, l.residual, variance, grad, curv, kind)
 	value += l.addPenalties(theta, psi, grad, curv)
 	for k := range l.anchors {
 		r, d, err := l.anchors[k].residual(l.cells)
@@ -89,31 +80,6 @@ func (l *likelihood) terms(theta, psi []float64, variance []float64, grad []floa
 		}
 	}
 	return value, nil
-}
-
-// densities fills each for the residuals r(i). Rows are independent jobs; sums are
-// taken afterwards in row order.
-func (l *likelihood) densities(noise *law, r func(i int) float64, variance []float64) {
-	n := len(l.obs)
-	run := func(lo, hi int) {
-		for i := lo; i < hi; i++ {
-			l.each[i] = l.density(noise, i, r(i), variance[i])
-		}
-	}
-	workers := 1
-	if l.noise.Kind == Survival { // the others cost less than a goroutine
-		workers = max(1, min(l.workers, n/rowsPerWorker))
-	}
-	if workers == 1 {
-		run(0, n)
-		return
-	}
-	var wg sync.WaitGroup
-	for w := range workers {
-		wg.Add(1)
-		go func() { defer wg.Done(); run(w*n/workers, (w+1)*n/workers) }()
-	}
-	wg.Wait()
 }
 
 // density is the noise density of observation i for a residual r.

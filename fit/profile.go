@@ -139,6 +139,8 @@ func (z *linearised) outer(psi []float64, free []Free) leastsq.Objective {
 		if grad == nil {
 			grad = make([]float64, len(w))
 		}
-		return v, z.differences(w, v, floor, free, grad, curv)
+		e := z.differences(w, v, floor, free, grad, curv)
+		
+		return v, e
 	}}
 }

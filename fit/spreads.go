@@ -70,8 +70,9 @@ func (z *linearised) residual(i int) float64 {
 	return r
 }
 
-// terms is −ln L at θ + δ.
-func (z *linearised) terms(psi []float64, derivatives bool) float64 {
+// terms is −ln L at θ + δ, with its derivatives, the second ones of the given kind.
+func (z *linearised) terms(psi []float64, derivatives bool, kind curvature) float64 {
+
 	l := z.l
 	var grad []float64
 	var curv *mat.SymDense
@@ -79,16 +80,8 @@ func (z *linearised) terms(psi []float64, derivatives bool) float64 {
 		grad, curv = z.grad, z.curv
 	}
 	clearAll(grad, curv)
-	value := 0.0
 	noise := l.law(psi)
-	l.densities(&noise, z.residual, z.variance)
-	for i := range l.obs {
-		d1 := &l.each[i]
-		value += d1.nll
-		if derivatives {
-			l.addRow(i, -d1.dr, d1.irr, grad, curv)
-		}
-	}
+	value := l.addRows(&noise, z.residual, z.variance, grad, curv, kind)
 	for i := range z.shifted {
 		z.shifted[i] = z.theta[i] + z.delta[i]
 	}
@@ -125,28 +118,49 @@ func (z *linearised) information() (*mat.Cholesky, bool) {
 // adjusted is A(ψ); ok is false where the information is singular.
 func (z *linearised) adjusted(psi []float64) (value float64, ok bool) {
 	z.l.variances(psi, z.variance)
-	clear(z.delta)
 	if len(z.active) == 0 {
-		return z.terms(psi, false), true
+		clear(z.delta)
+		return z.terms(psi, false, expected), true
 	}
-	// Newton's method; one step is exact for Gaussian rows, censored and Student rows
-	// take a few, halved where they do not descend.
-	value = z.terms(psi, true)
-	var chol *mat.Cholesky
+	kind := expected
+	if z.l.noise.Kind == Student {
+		// The only noise with more than one minimum: every ψ is to find the same one.
+		clear(z.delta)
+		kind = observed
+	}
+	value, chol, ok := z.descend(psi, kind)
+	if !ok && kind == observed {
+		clear(z.delta)
+		value, chol, ok = z.descend(psi, expected)
+	} else if ok && kind == observed {
+		value = z.terms(psi, true, expected)
+		chol, ok = z.information()
+	}
+	if !ok {
+		return 0, false
+	}
+	return value + 0.5*chol.LogDet(), finite(value)
+}
+
+// descend minimises −ln L over δ by Newton's method, from the δ at hand. One step is
+// exact for Gaussian rows; the others take a few, halved where they do not descend. ok is
+// false where the curvature is not positive definite.
+func (z *linearised) descend(psi []float64, kind curvature) (value float64, chol *mat.Cholesky, ok bool) {
+	value = z.terms(psi, true, kind)
+	g := mat.NewVecDense(len(z.active), nil)
+	s := mat.NewVecDense(len(z.active), z.step)
 	for range 30 {
 		if chol, ok = z.information(); !ok {
-			return 0, false
+			return 0, nil, false
 		}
-		g := mat.NewVecDense(len(z.active), nil)
 		for a, i := range z.active {
 			g.SetVec(a, z.grad[i])
 		}
-		s := mat.NewVecDense(len(z.active), z.step)
 		if err := chol.SolveVecTo(s, g); err != nil && !isCondition(err) {
-			return 0, false
+			return 0, nil, false
 		}
 		decrease := mat.Dot(s, g)
-		if decrease < 1e-13*(1+math.Abs(value)) {
+		if decrease < 1e-16*(1+math.Abs(value)) {
 			break
 		}
 		before := value
@@ -154,7 +168,7 @@ func (z *linearised) adjusted(psi []float64) (value float64, ok bool) {
 			for a, i := range z.active {
 				z.delta[i] -= scale * z.step[a]
 			}
-			if value = z.terms(psi, true); value <= before {
+			if value = z.terms(psi, true, kind); value <= before {
 				break
 			}
 			for a, i := range z.active {
@@ -162,7 +176,7 @@ func (z *linearised) adjusted(psi []float64) (value float64, ok bool) {
 			}
 		}
 	}
-	return value + 0.5*chol.LogDet(), finite(value)
+	return value, chol, true
 }
 
 func isCondition(err error) bool {
@@ -180,7 +194,7 @@ func isCondition(err error) bool {
 func (z *linearised) estimate(psi []float64, free []Free) (x []float64, covariance *mat.SymDense, err error) {
 	k := len(psi)
 	_, floor := z.variables(psi, free)
-	res, err := leastsq.Minimize(z.outer(psi, free), leastsq.Settings{Local: true})
+	res, err := leastsq.Minimize(z.outer(psi, free), leastsq.Settings{Local: true, Tolerance: spreadTolerance})
 	if err != nil {
 		return nil, nil, err
 	}
@@ -297,11 +311,12 @@ func (z *linearised) differences(w []float64, v float64, floor []float64, free [
 // varianceStep is the relative step of the differences of A in the variances:
 // small enough that third derivatives do not matter, large enough that the
 // rounding of A (some 1e-13) does not either.
-const varianceStep = 1e-3
+const varianceStep = 1e-4
 
 // hessian fills the gradient and the Hessian of A at the variances w by central
 // differences; the centre is moved up by one step where it stands at zero.
 func (z *linearised) hessian(w []float64, v float64, floor []float64, free []Free, g []float64, h *mat.SymDense) error {
+
 	k := len(w)
 	step := make([]float64, k)
 	centre := append([]float64(nil), w...)
@@ -355,3 +370,8 @@ func (z *linearised) hessian(w []float64, v float64, floor []float64, free []Fre
 }
 
 func clamp(x, lo, hi float64) float64 { return math.Min(math.Max(x, lo), hi) }
+
+// spreadTolerance is how close to the smallest A the spreads are taken, in their own
+// standard errors. A is known to 1e-13 of itself, and its slope, by differences, to some
+// 1e-9 standard errors for the largest data.
+const spreadTolerance = 1e-7

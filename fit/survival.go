@@ -140,6 +140,7 @@ func blurredSurvival(x, ρ float64) (ln, first, second float64) {
 func boiling(r, v, κ, hazard float64, intact bool) density {
 	ln, first, second := blurred(κ*r+math.Log(hazard), κ*math.Sqrt(v), intact)
 	d := density{nll: -ln, dr: -κ * first, dv: -0.5 * κ * κ * (second + first*first), irr: math.Max(0, -κ*κ*second)}
+	d.hrr = d.irr
 	if !intact {
 		d.nll -= math.Log(κ)
 	}

@@ -124,7 +124,7 @@ func (s *spectrum) inverse(n int) *mat.SymDense {
 
 // null lists the directions in θ, length n, along which nothing changes: a unit
 // vector for each dead parameter and D⁻¹v for each lost singular value, the
-// latter with its largest share |v_i| scaled to one.
+// latter with its largest share |v_i|, the first of equals, scaled to one.
 func (s *spectrum) null(n int) []Direction {
 	var list []Direction
 	for _, j := range s.dead {
@@ -136,7 +136,7 @@ func (s *spectrum) null(n int) []Direction {
 		d := Direction{Change: make([]float64, n), Share: make([]float64, n)}
 		top := 0.0
 		for a := range s.live {
-			if v := s.v.At(a, k); math.Abs(v) > math.Abs(top) {
+			if v := s.v.At(a, k); math.Abs(v) > (1+1e-6)*math.Abs(top) { // of equals, the first
 				top = v
 			}
 		}

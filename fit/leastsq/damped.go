@@ -146,6 +146,16 @@ const (
 	maxPolish = 3
 )
 
+// relax is the factor on the damping after a step of gain ratio ρ was taken. Where the
+// model has told the decrease to 3 %, damping only holds the search back along
+// directions that the data tell little about, and is nearly let go of.
+func relax(ρ float64) float64 {
+	if e := math.Abs(ρ - 1); e < 0.03 {
+		return math.Max(1e-4, e*e)
+	}
+	return math.Max(1.0/3, 1-math.Pow(2*ρ-1, 3))
+}
+
 // search returns true when it ended by itself, false when it was told to stop.
 func (d *damped) search(task *optimize.Task, ask func(optimize.Operation) bool) bool {
 	copy(d.x, task.X)
@@ -193,7 +203,7 @@ func (d *damped) search(task *optimize.Task, ask func(optimize.Operation) bool) 
 					copy(d.x, task.X)
 					copy(d.g, task.Gradient)
 					d.accepted++
-					λ = math.Max(λ*math.Max(1.0/3, 1-math.Pow(2*ρ-1, 3)), d.m.floor())
+					λ = math.Max(λ*relax(ρ), d.m.floor())
 					ν = 2
 					if !ask(optimize.MajorIteration) {
 						return false
