@@ -302,7 +302,11 @@ func (c *Calibration) alternate(lik *likelihood, settings leastsq.Settings, cold
 			if err != nil {
 				return nil, err
 			}
-			psi, cov, err := z.estimate(c.psi, lik.lay.psi)
+			from := c.psi
+			if cold && round == 0 {
+				from = z.scatter(c.psi)
+			}
+			psi, cov, err := z.estimate(from, lik.lay.psi)
 			if errors.Is(err, errSingular) {
 				// Without determined locations there is no adjustment; the caller's
 				// identifiability report says which parameters are to blame.

@@ -2,6 +2,7 @@ package fit
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -183,6 +184,32 @@ func isCondition(err error) bool {
 	_, ok := err.(mat.Condition)
 	return ok
 }
+
+// scatter is ψ with the spread of each group of rows where the median of their squared
+// residuals would put it, which saves the search from far off a dozen steps.
+func (z *linearised) scatter(psi []float64) []float64 {
+	l := z.l
+	squares := make([][]float64, len(psi))
+	for i := range l.obs {
+		if at := l.lay.spread[i]; at >= 0 && l.obs[i].Outcome == 0 {
+			squares[at] = append(squares[at], z.r[i]*z.r[i]-l.stated[i])
+		}
+	}
+	x := append([]float64(nil), psi...)
+	for at, s := range squares {
+		if len(s) == 0 {
+			continue
+		}
+		slices.Sort(s)
+		if v := s[len(s)/2] / medianSquare; v > 0 {
+			x[at] = clamp(math.Sqrt(v), l.lay.psi[at].Lower, l.lay.psi[at].Upper)
+		}
+	}
+	return x
+}
+
+// medianSquare is the median of the square of a standard normal variable.
+const medianSquare = 0.454936423119572
 
 // estimate minimises A from psi and returns the new spreads, and their covariance
 // from the curvature of A (nil when it is not positive definite).
