@@ -395,7 +395,7 @@ func (c *Calibration) objective(lik *likelihood, variance []float64) leastsq.Obj
 	for i, f := range lik.lay.theta {
 		params[i] = leastsq.Param{Name: f.Label(), Start: c.theta[i], Lower: f.Lower, Upper: f.Upper}
 	}
-	return leastsq.Objective{Params: params, Size: len(lik.obs), Eval: func(theta, grad []float64, curv *mat.SymDense) (float64, error) {
+	return leastsq.Objective{Params: params, Size: len(lik.obs), Rounding: lik.rounding(), Eval: func(theta, grad []float64, curv *mat.SymDense) (float64, error) {
 		g := grad
 		if g == nil && curv != nil {
 			g = make([]float64, len(theta))

@@ -50,6 +50,15 @@ func (l *likelihood) hold() {
 	}
 }
 
+// rounding is the error of differences of −ln L: that of the quadratures of survival
+// rows, 1e-10 each, beyond which arithmetic is exact.
+func (l *likelihood) rounding() float64 {
+	if l.noise.Kind != Survival {
+		return 0
+	}
+	return 1e-9 * math.Sqrt(float64(len(l.obs)))
+}
+
 // law is the noise at the spreads ψ.
 func (l *likelihood) law(psi []float64) law {
 	if at := l.lay.degrees; at >= 0 {

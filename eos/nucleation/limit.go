@@ -71,39 +71,37 @@ const maxSteps = 120
 
 // limitTolerance is the relative step at which a limit is taken; the error left
 // is of the order of its square times the curvature of ψ, T/(Tc−T): below 1e-12,
-// which nearTolerance ensures close to Tc. A per-kelvin target drifts with the state, which the slope of ψ does not know; a
-// secant stands in for it, and its slower steps need their own tolerance.
+// which nearTolerance ensures close to Tc. A per-kelvin target drifts with the state, by
+// one part in a hundred of lnJ, which the slope of ψ does not know: a step that was taken
+// before the drift is known leaves that part of itself, and must be smaller.
 const (
-	limitTolerance     = 1e-8
-	nearTolerance      = 3e-7
-	perKelvinTolerance = 1e-11
+	limitTolerance   = 1e-8
+	nearTolerance    = 3e-7
+	driftlessPortion = 1e-2
+	proof            = 1e-12 // what the state found may still be off, relative
 )
 
-func (t *Target) tolerance() float64 {
-	if t.PerKelvin {
-		return perKelvinTolerance
-	}
-	return limitTolerance
+// drift follows the threshold of a per-kelvin target from state to state.
+type drift struct {
+	x, wanted float64
+	set       bool
 }
 
-// secant remembers the last point of a search.
-type secant struct {
-	x, y float64
-	set  bool
-}
-
-// slope is that of the line through the last point and (x, y) for a per-kelvin
-// target; else, and where the line points the other way, the one given.
-func (s *secant) slope(t *Target, x, y, given float64) float64 {
+// slope is that of ψ along a search, with ∂ψ/∂lnJ* = −½(ψ+1)/(lnA − lnJ*), given the slope
+// at a constant threshold; and the relative step to be asked for with it.
+func (d *drift) slope(t *Target, x, ψ, lnA, wanted, given float64) (slope, tolerance float64) {
 	if !t.PerKelvin || math.IsNaN(given) {
-		return given
+		return given, limitTolerance
 	}
-	last := *s
-	*s = secant{x, y, true}
-	if k := (y - last.y) / (x - last.x); last.set && k/given > 0 {
-		return k
+	last := *d
+	*d = drift{x, wanted, true}
+	if last.set && x != last.x {
+		k := given - 0.5*(ψ+1)/(lnA-wanted)*(wanted-last.wanted)/(x-last.x)
+		if r := k / given; r > 0.5 && r < 2 {
+			return k, limitTolerance
+		}
 	}
-	return given
+	return given, driftlessPortion * limitTolerance
 }
 
 // KineticLimit returns the temperature at which the flux of the liquid at P
@@ -126,7 +124,7 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 		T = f.firstGuess(P)
 	}
 	var p point
-	var line secant
+	var threshold drift
 	spinodal := false // hi is the spinodal, or a temperature proven above the limit
 	var residual float64
 	for i := 1; i <= maxSteps; i++ {
@@ -135,7 +133,8 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 		switch c {
 		case fine:
 			ψ, slope := f.psi(&p, t, false)
-			residual = p.lnJ() - f.wanted(&p, t)
+			wanted := f.wanted(&p, t)
+			residual = p.lnJ() - wanted
 			falling := slope < 0 && p.excess > 0 // between the peak of J and the spinodal
 			switch {
 			case ψ >= 0:
@@ -149,11 +148,14 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 				next = math.NaN()
 				break
 			}
-			next = T - ψ/line.slope(&t, T, ψ, slope)
-			if math.Abs(next-T) <= math.Min(t.tolerance()*T, nearTolerance*math.Sqrt(T*(f.thi-T))) && next > 0 {
-				// one last evaluation brings everything to the limit itself
+			slope, tolerance := threshold.slope(&t, T, ψ, p.lnA, wanted, slope)
+			next = T - ψ/slope
+			if math.Abs(next-T) <= math.Min(tolerance*T, nearTolerance*math.Sqrt(T*(f.thi-T))) && next > 0 {
+				// one last evaluation brings everything to the limit itself, and proves it
 				if f.evaluate(next, P, &p) == fine && p.excess > 0 {
-					return f.limitAt(&p, t, i+1, false)
+					if ψ, _ := f.psi(&p, t, false); math.Min(math.Abs(ψ/slope), math.Abs(next-T)) <= proof*next {
+						return f.limitAt(&p, t, i+1, false)
+					}
 				}
 			}
 		case noVapour:

@@ -31,7 +31,7 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 	}
 	hi := ps
 	var p point
-	var line secant
+	var threshold drift
 	proven := !isSpinodal
 	P := guess
 	if P == 0 || !(P > lo && P < hi) {
@@ -43,7 +43,8 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 		switch c := f.evaluate(T, P, &p); c {
 		case fine:
 			ψ, slope := f.psi(&p, t, true)
-			residual = p.lnJ() - f.wanted(&p, t)
+			wanted := f.wanted(&p, t)
+			residual = p.lnJ() - wanted
 			falling := slope > 0 && p.excess > 0
 			switch {
 			case ψ >= 0:
@@ -57,10 +58,13 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 				next = math.NaN()
 				break
 			}
-			next = P - ψ/line.slope(&t, P, ψ, slope)
-			if math.Abs(next-P) <= t.tolerance()*(math.Abs(P)+p.excess) {
+			slope, tolerance := threshold.slope(&t, P, ψ, p.lnA, wanted, slope)
+			next = P - ψ/slope
+			if math.Abs(next-P) <= tolerance*(math.Abs(P)+p.excess) {
 				if f.evaluate(T, next, &p) == fine && p.excess > 0 {
-					return f.limitAt(&p, t, i+1, true)
+					if ψ, _ := f.psi(&p, t, true); math.Min(math.Abs(ψ/slope), math.Abs(next-P)) <= proof*(math.Abs(next)+p.excess) {
+						return f.limitAt(&p, t, i+1, true)
+					}
 				}
 			}
 		case noLiquid, tolmanTooLarge:

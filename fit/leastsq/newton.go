@@ -114,7 +114,9 @@ func (w *newton) decrease() float64 { return w.f - w.trial }
 // unit: one standard error from its minimum −ln L has risen by ½.
 func (w *newton) unit() float64 { return 0.5 }
 
-func (w *newton) noise() float64 { return 16 * 0x1p-52 * math.Max(1, math.Abs(w.f)) }
+func (w *newton) noise() float64 {
+	return math.Max(w.o.Rounding, 16*0x1p-52*math.Max(1, math.Abs(w.f)))
+}
 
 // floor: the curvature is a sum of squares known to ε, with a margin for the sum.
 func (w *newton) floor() float64 { return 100 * 0x1p-52 }

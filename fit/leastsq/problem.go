@@ -38,9 +38,13 @@ type Objective struct {
 	// Size is the number of observations, for the report only.
 	Size int
 	// Eval returns the value at theta and, where they are not nil, fills grad with
-	// its gradient and curv (n×n, zeroed) with a positive semidefinite curvature,
-	// the observed or expected information. It must not keep or change theta.
+	// its gradient and curv (n×n, zeroed) with the observed or expected information;
+	// where that is not positive definite, damping makes up for it. It must not keep or
+	// change theta.
 	Eval func(theta, grad []float64, curv *mat.SymDense) (value float64, err error)
+	// Rounding is the absolute error of differences between values, as of a quadrature,
+	// where it exceeds that of arithmetic. Steps that promise less follow the gradient.
+	Rounding float64
 }
 
 // Objective is the likelihood of p for independent normal residuals of known
