@@ -140,7 +140,7 @@ func (z *linearised) outer(psi []float64, free []Free) leastsq.Objective {
 			grad = make([]float64, len(w))
 		}
 		e := z.differences(w, v, floor, free, grad, curv)
-		
+
 		return v, e
 	}}
 }

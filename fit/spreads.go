@@ -143,6 +143,14 @@ func (z *linearised) adjusted(psi []float64) (value float64, ok bool) {
 	return value + 0.5*chol.LogDet(), finite(value)
 }
 
+// The determinant of the information of censored and survival rows changes with δ in
+// proportion, so that δ must be known to 1e-9 of its standard errors. Decreases below
+// the rounding of −ln L are taken on trust of the gradient.
+const (
+	settledDecrease = 1e-18
+	trustedDecrease = 1e-9
+)
+
 // descend minimises −ln L over δ by Newton's method, from the δ at hand. One step is
 // exact for Gaussian rows; the others take a few, halved where they do not descend. ok is
 // false where the curvature is not positive definite.
@@ -161,7 +169,7 @@ func (z *linearised) descend(psi []float64, kind curvature) (value float64, chol
 			return 0, nil, false
 		}
 		decrease := mat.Dot(s, g)
-		if decrease < 1e-16*(1+math.Abs(value)) {
+		if decrease < settledDecrease {
 			break
 		}
 		before := value
@@ -169,7 +177,7 @@ func (z *linearised) descend(psi []float64, kind curvature) (value float64, chol
 			for a, i := range z.active {
 				z.delta[i] -= scale * z.step[a]
 			}
-			if value = z.terms(psi, true, kind); value <= before {
+			if value = z.terms(psi, true, kind); value <= before || decrease < trustedDecrease {
 				break
 			}
 			for a, i := range z.active {
