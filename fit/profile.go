@@ -139,8 +139,6 @@ func (z *linearised) outer(psi []float64, free []Free) leastsq.Objective {
 		if grad == nil {
 			grad = make([]float64, len(w))
 		}
-		e := z.differences(w, v, floor, free, grad, curv)
-
-		return v, e
+		return v, z.differences(w, v, floor, free, grad, curv)
 	}}
 }
