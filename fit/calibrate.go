@@ -17,6 +17,9 @@ type Options struct {
 	Workers int // goroutines over rows; 0: as many as processors
 	// Warm starts the search from an earlier calibration of the same plan.
 	Warm *Calibration
+	// WithoutRows leaves out Rows and their summaries RMSE, Bias and Spread, for a
+	// calibration that only serves to predict.
+	WithoutRows bool
 
 	quick bool // values only: no uncertainties, rows or warnings
 	// redraw, if not nil, adds errors to anchors: about the equation of Warm if
@@ -183,7 +186,7 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 		}
 		return c, nil
 	}
-	if err := c.finish(lik, covPsi); err != nil {
+	if err := c.finish(lik, covPsi, !o.WithoutRows); err != nil {
 		return nil, err
 	}
 	return c, nil

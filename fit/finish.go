@@ -10,8 +10,8 @@ import (
 
 // This file turns converged parameters into the report of a calibration.
 
-// finish computes uncertainties, residuals and summaries at the estimates.
-func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense) error {
+// finish computes uncertainties and, with rows, residuals and summaries at the estimates.
+func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense, rows bool) error {
 	if err := lik.evaluate(c.theta); err != nil {
 		return err
 	}
@@ -69,7 +69,9 @@ func (c *Calibration) finish(lik *likelihood, covPsi *mat.SymDense) error {
 		}
 	}
 	c.satterthwaite(lik, active, covPsi)
-	c.rows(lik, variance, len(active))
+	if rows {
+		c.rows(lik, variance, len(active))
+	}
 	c.Warnings = append(c.Warnings, c.Identity.Warnings...)
 	c.warnNoise(lik)
 	c.warnInfluence()

@@ -109,6 +109,9 @@ type Query struct {
 	// OrSpinodal lets the spinodal stand in where the flux does not reach its target
 	// before it, instead of an error; the prediction says so.
 	OrSpinodal bool
+	// LimitOnly leaves SpinodalT and SaturationT out of the prediction, which take longer
+	// than the limit itself.
+	LimitOnly bool
 }
 
 // Prediction is a predicted limit.
@@ -276,15 +279,16 @@ func (m *Model) Predict(q Query) (Prediction, error) {
 		out.Log10Flux, out.HasFlux = l.lnJ/math.Ln10, true
 	}
 	m.uncertainty(&out, &q, &l, &found)
-	if s, err := ph.Model.LiquidSpinodalTemperature(out.Pressure); err == nil {
-		out.SpinodalT, out.HasSpinodal = s.T, true
+	if !q.LimitOnly {
+		s, err := ph.Model.LiquidSpinodalTemperature(out.Pressure)
+		out.SpinodalT, out.HasSpinodal = s.T, err == nil
+		out.SaturationT, out.HasSaturation = ph.saturationTemperature(out.Pressure)
 	}
 	if r := q.Record; m.Variant.Limit == Kinetic && m.Variant.Tension == TensionCorrelation {
 		if lo, hi, ok := r.TensionRange(); ok && (l.T < lo || l.T > hi) {
 			out.Warnings = append(out.Warnings, fmt.Sprintf("the surface tension fit of %s is stated for %.5g K to %.5g K and used beyond", r.Key, lo, hi))
 		}
 	}
-	out.SaturationT, out.HasSaturation = ph.saturationTemperature(out.Pressure)
 	m.compareRange(&out, &q, &found)
 	out.doubt(q.Record)
 	return out, nil

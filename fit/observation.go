@@ -47,7 +47,13 @@ func (d *Data) OwnFlux() int {
 
 // Subset returns the data restricted to the observations whose index keep allows.
 func (d *Data) Subset(keep func(i int) bool) *Data {
-	s := &Data{Files: d.Files}
+	n := 0
+	for i := range d.Observations {
+		if keep(i) {
+			n++
+		}
+	}
+	s := &Data{Files: d.Files, Observations: make([]Observation, 0, n)}
 	for i := range d.Observations {
 		if keep(i) {
 			s.Observations = append(s.Observations, d.Observations[i])

@@ -247,7 +247,7 @@ func (c *Comparison) evaluate(ctx context.Context, members []member, o CompareOp
 	}
 	entries := make([]*Entry, len(members))
 	errs := make([]error, len(members))
-	parallel(len(members), func(i int) {
+	parallel(len(members), len(members), func(i int) {
 		if ctx.Err() == nil {
 			entries[i], errs[i] = c.entry(ctx, &members[i], work.tick)
 		}

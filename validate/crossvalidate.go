@@ -108,9 +108,15 @@ func crossValidate(ctx context.Context, d *fit.Data, p fit.Plan, f *Folds, warm 
 		p.References = warm.References
 	}
 	errs := make([]error, len(f.Names))
-	parallel(len(f.Names), func(k int) {
+	// Large folds are taken one at a time, each on all processors, which needs the memory
+	// of one.
+	at, within := len(f.Names), 1
+	if len(d.Observations) >= largeData {
+		at, within = 1, 0
+	}
+	parallel(len(f.Names), at, func(k int) {
 		if ctx.Err() == nil {
-			if err := cv.leaveOut(d, p, k, untuned, warm); err != nil {
+			if err := cv.leaveOut(d, p, k, untuned, warm, within); err != nil {
 				errs[k] = &FoldError{f.Names[k], err}
 			}
 			tick()
@@ -128,11 +134,16 @@ func crossValidate(ctx context.Context, d *fit.Data, p fit.Plan, f *Folds, warm 
 	return cv, nil
 }
 
-// parallel runs n independent jobs on the processors there are.
-func parallel(n int, job func(k int)) {
+// largeData is the number of rows from which on rows, not folds, are worked on in
+// parallel.
+const largeData = 20000
+
+// parallel runs n independent jobs, at most so many at a time, on the processors there
+// are.
+func parallel(n, most int, job func(k int)) {
 	var wg sync.WaitGroup
 	next := make(chan int)
-	for range min(n, runtime.GOMAXPROCS(0)) {
+	for range min(n, most, runtime.GOMAXPROCS(0)) {
 		wg.Add(1)
 		go func() {
 			defer wg.Done()
@@ -149,31 +160,54 @@ func parallel(n int, job func(k int)) {
 }
 
 // leaveOut fills the rows of fold k.
-func (cv *CrossValidation) leaveOut(d *fit.Data, p fit.Plan, k int, untuned *fit.Model, warm *fit.Calibration) error {
+func (cv *CrossValidation) leaveOut(d *fit.Data, p fit.Plan, k int, untuned *fit.Model, warm *fit.Calibration, workers int) error {
 	train := d.Subset(func(i int) bool { return cv.Folds.Of[i] != k })
-	c, err := fit.Calibrate(train, p, fit.Options{Workers: 1, Warm: warm})
+	c, err := fit.Calibrate(train, p, fit.Options{Workers: workers, Warm: warm, WithoutRows: true})
 	if err != nil {
 		return err
 	}
 	m := c.Model()
+	var rows []int
 	for i := range d.Observations {
-		if cv.Folds.Of[i] != k {
-			continue
+		if cv.Folds.Of[i] == k {
+			rows = append(rows, i)
 		}
-		o := &d.Observations[i]
-		q := o.Query()
-		tuned, err := m.Predict(q)
+	}
+	blocks := 1
+	if workers != 1 {
+		blocks = runtime.GOMAXPROCS(0)
+	}
+	errs := make([]error, blocks)
+	parallel(blocks, blocks, func(b int) {
+		for _, i := range rows[b*len(rows)/blocks : (b+1)*len(rows)/blocks] {
+			if cv.Rows[i], errs[b] = leftOut(&d.Observations[i], m, untuned); errs[b] != nil {
+				return
+			}
+			cv.Rows[i].Index, cv.Rows[i].Fold = i, k
+		}
+	})
+	for _, err := range errs {
 		if err != nil {
-			return fmt.Errorf("%s: %w", o.At(), err)
+			return err
 		}
-		before, err := untuned.Predict(q)
-		if err != nil {
-			return fmt.Errorf("%s: %w", o.At(), err)
-		}
-		cv.Rows[i] = LeftOut{Index: i, Fold: k, Tuned: o.Temperature - tuned.Temperature, Untuned: o.Temperature - before.Temperature,
-			UntunedAtSpinodal: before.AtSpinodal, U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Degrees: m.Degrees, Variance: statedVariance(o, tuned.Slope)}
 	}
 	return nil
+}
+
+// leftOut predicts an observation by the model tuned without it and by the untuned one.
+func leftOut(o *fit.Observation, m, untuned *fit.Model) (LeftOut, error) {
+	q := o.Query()
+	q.LimitOnly = true
+	tuned, err := m.Predict(q)
+	if err != nil {
+		return LeftOut{}, fmt.Errorf("%s: %w", o.At(), err)
+	}
+	before, err := untuned.Predict(q)
+	if err != nil {
+		return LeftOut{}, fmt.Errorf("%s: %w", o.At(), err)
+	}
+	return LeftOut{Tuned: o.Temperature - tuned.Temperature, Untuned: o.Temperature - before.Temperature,
+		UntunedAtSpinodal: before.AtSpinodal, U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Degrees: m.Degrees, Variance: statedVariance(o, tuned.Slope)}, nil
 }
 
 // statedVariance is that of a residual from the stated uncertainties of its reading,

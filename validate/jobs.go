@@ -116,7 +116,7 @@ func (w *Jobs) Run(ctx context.Context, first, last int) ([]JobResult, error) {
 	}
 	work := progress{report: w.o.Progress, total: last - first}
 	out := make([]JobResult, last-first)
-	parallel(len(out), func(i int) {
+	parallel(len(out), len(out), func(i int) {
 		if ctx.Err() == nil {
 			b := w.list[first+i]
 			cal, err := warm[b.member]()
@@ -150,7 +150,7 @@ func (w *Jobs) run(b job, cal *fit.Calibration) (JobResult, error) {
 		cv := &CrossValidation{Folds: w.c.Folds, Rows: make([]LeftOut, n)}
 		p := m.Plan
 		p.References = cal.References
-		if err := cv.leaveOut(m.data, p, b.k, untuned, cal); err != nil {
+		if err := cv.leaveOut(m.data, p, b.k, untuned, cal, 1); err != nil {
 			return JobResult{}, &FoldError{w.c.Folds.Names[b.k], err}
 		}
 		return JobResult{Left: w.leftOutRows(cv, b.k)}, nil

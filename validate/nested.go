@@ -63,7 +63,7 @@ func (c *Comparison) nested(ctx context.Context, members []member, twoOut func(m
 		}
 	}
 	failed := make([]bool, len(jobs))
-	parallel(len(jobs), func(n int) {
+	parallel(len(jobs), len(jobs), func(n int) {
 		if ctx.Err() != nil {
 			return
 		}
@@ -91,7 +91,7 @@ func (c *Comparison) leaveTwoOut(m *member, warm *fit.Calibration, j, k int, inn
 	of := c.Folds.Of
 	plan := m.Plan
 	plan.References = warm.References
-	cal, err := fit.Calibrate(m.data.Subset(func(i int) bool { return of[i] != j && of[i] != k }), plan, fit.Options{Workers: 1, Warm: warm})
+	cal, err := fit.Calibrate(m.data.Subset(func(i int) bool { return of[i] != j && of[i] != k }), plan, fit.Options{Workers: 1, Warm: warm, WithoutRows: true})
 	if err != nil {
 		return err
 	}
@@ -107,7 +107,9 @@ func (c *Comparison) leaveTwoOut(m *member, warm *fit.Calibration, j, k int, inn
 			continue
 		}
 		o := &m.data.Observations[i]
-		p, err := model.Predict(o.Query())
+		q := o.Query()
+		q.LimitOnly = true
+		p, err := model.Predict(q)
 		if err != nil {
 			return err
 		}
