@@ -100,14 +100,19 @@ func (m *Model) uncertainty(out *Prediction, q *Query, l *limitValue, found *[lo
 	}
 	out.HasU = true
 	out.ULimit = math.Sqrt(limit.v)
-	t := student(0.975, limit.degrees())
-	limitLow, limitHigh := -t*out.ULimit, t*out.ULimit
 
 	s, ν := m.spreadOf(q)
 	total := limit
 	total.add(s*s, ν)
 	out.Degrees = total.degrees()
-	low, high := m.scatter(q, l, math.Sqrt(limit.v), s, out.Degrees, out)
+	m.scatter(q, l, s, out)
+	out.UPressure = math.Abs(out.U / l.dTdP)
+	if q.LimitOnly {
+		return
+	}
+	t := student(0.975, limit.degrees())
+	limitLow, limitHigh := -t*out.ULimit, t*out.ULimit
+	low, high := m.reach(q, l, s, out)
 	scale, centre := 1.0, out.Temperature
 	if q.AtTemperature {
 		scale, centre = 1/math.Abs(l.dTdP), out.Pressure
@@ -115,29 +120,34 @@ func (m *Model) uncertainty(out *Prediction, q *Query, l *limitValue, found *[lo
 			low, high = -high, -low
 		}
 	}
-	out.UPressure = math.Abs(out.U / l.dTdP)
 	out.Low, out.High = centre+scale*low, centre+scale*high
 	out.LimitLow, out.LimitHigh = centre+scale*limitLow, centre+scale*limitHigh
 }
 
-// scatter fills the standard uncertainty of a new reading and returns its 95 %
-// interval about the limit, in K.
-func (m *Model) scatter(q *Query, l *limitValue, u, s, ν float64, out *Prediction) (low, high float64) {
-	κ := l.steepness
-	switch {
+// scatter fills the standard uncertainty of a new reading with the spread s.
+func (m *Model) scatter(q *Query, l *limitValue, s float64, out *Prediction) {
+	u := out.ULimit
+	out.U = math.Hypot(u, s)
+	switch κ := l.steepness; {
 	case m.Noise.Kind == Student:
-		n := m.Noise.Degrees
-		out.U = math.Inf(1)
-		if n > 2 {
+		if n := m.Noise.Degrees; n > 2 {
 			out.U = math.Sqrt(u*u + s*s*n/(n-2))
-		} else {
-			out.U = math.Hypot(u, s) // no finite variance: the scale
+		} else { // no finite variance: the scale
 			out.Warnings = append(out.Warnings, "student noise of two or fewer degrees of freedom has no standard deviation; its scale is given instead")
 		}
-		w := math.Hypot(student(0.975, ν)*u, student(0.975, n)*s)
-		return -w, w
 	case m.Noise.Kind == Survival && q.Hazard > 0 && κ > 0:
 		out.U = math.Sqrt(u*u + s*s + varianceLogHazard/(κ*κ))
+	}
+}
+
+// reach is the 95 % interval of a new reading about the limit, in K.
+func (m *Model) reach(q *Query, l *limitValue, s float64, out *Prediction) (low, high float64) {
+	u, ν := out.ULimit, out.Degrees
+	switch κ := l.steepness; {
+	case m.Noise.Kind == Student:
+		w := math.Hypot(student(0.975, ν)*u, student(0.975, m.Noise.Degrees)*s)
+		return -w, w
+	case m.Noise.Kind == Survival && q.Hazard > 0 && κ > 0:
 		blur := math.Hypot(u, s) * student(0.975, ν) / student(0.975, manyDegrees)
 		// P(reading above y) falls from 1 to 0.
 		quantile := func(p float64) float64 {
@@ -155,7 +165,6 @@ func (m *Model) scatter(q *Query, l *limitValue, u, s, ν float64, out *Predicti
 		}
 		return quantile(0.975), quantile(0.025)
 	}
-	out.U = math.Hypot(u, s)
 	w := student(0.975, ν) * out.U
 	return -w, w
 }

@@ -109,8 +109,8 @@ type Query struct {
 	// OrSpinodal lets the spinodal stand in where the flux does not reach its target
 	// before it, instead of an error; the prediction says so.
 	OrSpinodal bool
-	// LimitOnly leaves SpinodalT and SaturationT out of the prediction, which take longer
-	// than the limit itself.
+	// LimitOnly leaves SpinodalT, SaturationT and the intervals out of the prediction,
+	// which take longer than the limit and its uncertainty.
 	LimitOnly bool
 }
 

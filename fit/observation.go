@@ -93,7 +93,11 @@ func Prepare(set *measure.Set, lib *fluid.Library, p Plan) (*Data, error) {
 	exclude := func(r *measure.Row, reason string) {
 		d.Excluded = append(d.Excluded, measure.Exclusion{File: r.File, Line: r.Line, Where: r.Where, Fluid: r.Key, Reason: reason})
 	}
-	cache := map[string]*Physics{}
+	type state struct {
+		record *fluid.Record
+		values Values
+	}
+	cache := map[state]*Physics{}
 	for i := range set.Rows {
 		r := &set.Rows[i]
 		rec, err := lib.Find(r.Key)
@@ -111,7 +115,7 @@ func Prepare(set *measure.Set, lib *fluid.Library, p Plan) (*Data, error) {
 		if err != nil {
 			return nil, err
 		}
-		key := fmt.Sprintf("%s %+v", rec.Key, values)
+		key := state{rec, values}
 		ph := cache[key]
 		if ph == nil {
 			ph, err = NewPhysics(p.Variant, rec, values)

@@ -31,38 +31,38 @@ const (
 )
 
 // ParameterTable returns the parameters in their order.
-func ParameterTable() []Parameter {
-	return []Parameter{
-		{Threshold, "1", "log10 of the threshold flux J* in m-3.s-1", 12, 0, 35},
-		{Prefactor, "1", "decades added to log10 J", 0, -20, 20},
-		{Attraction, "1", "factor on the attraction a", 1, 0.7, 1.3},
-		{Covolume, "1", "factor on the covolume b", 1, 0.7, 1.3},
-		{Slope, "1", "factor on the slope m or the exponent n of alpha (van der Waals: the exponent itself)", 1, -1, 3},
-		{SurfaceTension, "1", "factor on the surface tension", 1, 0.5, 1.5},
-		{Tolman, "nm", "Tolman length", 0, -0.5, 0.5},
-		{Offset, "K", "bias of a method against the reference method", 0, -30, 30},
-		{Spread, "K", "standard deviation beyond the stated uncertainties", 1, 0, 50},
-		{DegreesOfNoise, "1", "degrees of freedom of student noise", 4, fewestDegrees, mostDegrees},
-	}
+func ParameterTable() []Parameter { return slices.Clone(parameters) }
+
+var parameters = []Parameter{
+	{Threshold, "1", "log10 of the threshold flux J* in m-3.s-1", 12, 0, 35},
+	{Prefactor, "1", "decades added to log10 J", 0, -20, 20},
+	{Attraction, "1", "factor on the attraction a", 1, 0.7, 1.3},
+	{Covolume, "1", "factor on the covolume b", 1, 0.7, 1.3},
+	{Slope, "1", "factor on the slope m or the exponent n of alpha (van der Waals: the exponent itself)", 1, -1, 3},
+	{SurfaceTension, "1", "factor on the surface tension", 1, 0.5, 1.5},
+	{Tolman, "nm", "Tolman length", 0, -0.5, 0.5},
+	{Offset, "K", "bias of a method against the reference method", 0, -30, 30},
+	{Spread, "K", "standard deviation beyond the stated uncertainties", 1, 0, 50},
+	{DegreesOfNoise, "1", "degrees of freedom of student noise", 4, fewestDegrees, mostDegrees},
 }
 
 // parameterOf returns the description of a parameter under a variant.
 func parameterOf(name string, v *Variant) (Parameter, error) {
-	t := ParameterTable()
-	i := slices.IndexFunc(t, func(p Parameter) bool { return p.Name == name })
+	i := slices.IndexFunc(parameters, func(p Parameter) bool { return p.Name == name })
 	if i < 0 {
 		var names []string
-		for _, p := range t {
+		for _, p := range parameters {
 			names = append(names, p.Name)
 		}
 		return Parameter{}, &OptionError{"parameter", name, "one of " + strings.Join(names, ", ")}
 	}
+	found := parameters[i]
 	if name == Slope {
 		if e, err := v.equation(); err == nil {
-			t[i].Start = e.Untuned().Slope
+			found.Start = e.Untuned().Slope
 		}
 	}
-	return t[i], nil
+	return found, nil
 }
 
 // By says for what a parameter has a value of its own.

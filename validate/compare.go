@@ -321,7 +321,7 @@ func (c *Comparison) judge(m *member, cal *fit.Calibration, cv *CrossValidation)
 		x, l := &cal.Rows[i], &e.CV.Rows[i]
 		rows = append(rows, reading{x.Residual, l.Variance, !l.Boiled})
 		if u, ok := l.Total(); ok && l.Boiled {
-			unseen = append(unseen, blind{l.Tuned, u, l.Degrees})
+			unseen = append(unseen, blind{l.Tuned, u, l.degrees()})
 		}
 	}
 	e.weigh(rows)
@@ -405,7 +405,7 @@ func (c *Comparison) spreadElsewhere(rows []reading) []blind {
 		}
 		for i, r := range rows {
 			if c.Folds.Of[i] == k && !r.intact {
-				out = append(out, blind{r.e, math.Sqrt(float64(s*s) + r.v), len(others)})
+				out = append(out, blind{r.e, math.Sqrt(float64(s*s) + r.v), float64(len(others))})
 			}
 		}
 	}

@@ -24,7 +24,16 @@ var nominals = [...]float64{0.5, 0.8, 0.95}
 // blind is a residual of a row that the model had not seen.
 type blind struct {
 	e, u    float64 // K
-	degrees int     // of freedom of u; 0 is many
+	degrees float64 // of freedom of u²; 0 is many
+}
+
+// level is that of the narrowest two-sided Student's t interval ±t·u that holds e.
+func (b *blind) level() float64 {
+	z := math.Abs(b.e) / b.u
+	if b.degrees == 0 {
+		return math.Erf(z / math.Sqrt2)
+	}
+	return 2*distuv.StudentsT{Mu: 0, Sigma: 1, Nu: b.degrees}.CDF(z) - 1
 }
 
 // coverage counts the rows inside Student's t intervals of half width t·u.
@@ -32,11 +41,15 @@ func coverage(rows []blind) []Coverage {
 	if len(rows) == 0 {
 		return nil
 	}
+	levels := make([]float64, len(rows))
+	for i := range rows {
+		levels[i] = rows[i].level()
+	}
 	var out []Coverage
-	for _, level := range nominals {
-		c := Coverage{Nominal: level, Rows: len(rows)}
-		for _, r := range rows {
-			if math.Abs(r.e) <= quantile(0.5+level/2, r.degrees)*r.u {
+	for _, nominal := range nominals {
+		c := Coverage{Nominal: nominal, Rows: len(rows)}
+		for _, l := range levels {
+			if l <= nominal {
 				c.Inside++
 			}
 		}
@@ -45,14 +58,6 @@ func coverage(rows []blind) []Coverage {
 		out = append(out, c)
 	}
 	return out
-}
-
-// quantile is that of Student's t, or of the normal distribution for 0 degrees.
-func quantile(p float64, degrees int) float64 {
-	if degrees == 0 {
-		return distuv.UnitNormal.Quantile(p)
-	}
-	return distuv.StudentsT{Mu: 0, Sigma: 1, Nu: float64(degrees)}.Quantile(p)
 }
 
 // Wilson returns the score interval of a proportion, k of n, at a two-sided level:

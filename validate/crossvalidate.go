@@ -34,8 +34,8 @@ type LeftOut struct {
 	UntunedAtSpinodal bool
 	U                 float64 // standard uncertainty of the tuned prediction, spread included, K
 	HasU              bool
-	Boiled            bool // intact rows are predicted but do not enter the errors
-	Degrees           int
+	Boiled            bool    // intact rows are predicted but do not enter the errors
+	Degrees           float64 // of freedom of U²
 	Variance          float64 // of the reading from its stated uncertainties, K²
 }
 
@@ -44,6 +44,16 @@ type LeftOut struct {
 func (l *LeftOut) Total() (u float64, ok bool) {
 	u = math.Sqrt(float64(l.U*l.U) + l.Variance)
 	return u, l.HasU && u > 0
+}
+
+// degrees are those of the square of Total by Welch and Satterthwaite (JCGM 100, G.4.1):
+// the stated variance counts as known.
+func (l *LeftOut) degrees() float64 {
+	if u2 := l.U * l.U; u2 > 0 {
+		x := 1 + l.Variance/u2
+		return l.Degrees * x * x
+	}
+	return l.Degrees
 }
 
 // CrossValidation compares the tuned model with the untuned one on rows that were
@@ -207,7 +217,7 @@ func leftOut(o *fit.Observation, m, untuned *fit.Model) (LeftOut, error) {
 		return LeftOut{}, fmt.Errorf("%s: %w", o.At(), err)
 	}
 	return LeftOut{Tuned: o.Temperature - tuned.Temperature, Untuned: o.Temperature - before.Temperature,
-		UntunedAtSpinodal: before.AtSpinodal, U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Degrees: m.Degrees, Variance: statedVariance(o, tuned.Slope)}, nil
+		UntunedAtSpinodal: before.AtSpinodal, U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Degrees: tuned.Degrees, Variance: statedVariance(o, tuned.Slope)}, nil
 }
 
 // statedVariance is that of a residual from the stated uncertainties of its reading,

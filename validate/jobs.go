@@ -52,7 +52,7 @@ type LeftOutRows struct {
 	AtSpinodal []bool    `json:"untuned_at_spinodal"`
 	U          []float64 `json:"standard_uncertainty_K"`
 	HasU       []bool    `json:"has_uncertainty"`
-	Degrees    []int     `json:"degrees_of_freedom"`
+	Degrees    []float64 `json:"degrees_of_freedom"`
 	Variance   []float64 `json:"variance_K2"`
 }
 

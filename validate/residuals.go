@@ -2,6 +2,8 @@ package validate
 
 import (
 	"math"
+	"runtime"
+	"slices"
 
 	"limsup/data/measure"
 	"limsup/fit"
@@ -26,7 +28,7 @@ type Residual struct {
 	HasFlux           bool
 	Intact            bool
 	Warnings          []string // of the prediction: extrapolation
-	leftOutDegrees    int
+	leftOutDegrees    float64
 }
 
 // Standardised is Residual/U; ok is false without U.
@@ -78,7 +80,7 @@ func Assess(c *fit.Calibration, cv *CrossValidation) *Assessment {
 		r.HasU = r.U > 0
 		if cv != nil {
 			l := &cv.Rows[i]
-			r.LeftOut, r.HasLeftOut, r.leftOutDegrees = l.Tuned, true, l.Degrees
+			r.LeftOut, r.HasLeftOut, r.leftOutDegrees = l.Tuned, true, l.degrees()
 			if u, ok := l.Total(); ok {
 				r.LeftOutU = u
 			}
@@ -110,28 +112,23 @@ func Assess(c *fit.Calibration, cv *CrossValidation) *Assessment {
 // Errors: *fit.RowError for a row that the model cannot predict.
 func AssessModel(d *fit.Data, m *fit.Model) (*Assessment, error) {
 	a := &Assessment{Data: d, Model: m, Rows: make([]Residual, len(d.Observations))}
-	var rows []blind
-	for i := range d.Observations {
-		o := &d.Observations[i]
-		p, err := m.Predict(o.Query())
+	unseen := make([]blind, len(d.Observations)) // u = 0: none
+	blocks := min(runtime.GOMAXPROCS(0), 1+len(d.Observations)/rowsPerBlock)
+	errs := make([]error, blocks)
+	parallel(blocks, blocks, func(b int) {
+		for i := b * len(a.Rows) / blocks; i < (b+1)*len(a.Rows)/blocks; i++ {
+			if a.Rows[i], unseen[i], errs[b] = assessRow(&d.Observations[i], m); errs[b] != nil {
+				return
+			}
+			a.Rows[i].Index = i
+		}
+	})
+	for _, err := range errs {
 		if err != nil {
-			return nil, &fit.RowError{At: o.At(), Fluid: o.Record.Key, Err: err}
-		}
-		r := Residual{Index: i, Predicted: p.Temperature, Residual: o.Temperature - p.Temperature, Intact: o.Outcome != measure.Boiled,
-			Log10Flux: p.Log10Flux, HasFlux: p.HasFlux, Warnings: p.Warnings}
-		variance := statedVariance(o, p.Slope)
-		if p.HasU {
-			variance += float64(p.U * p.U)
-		}
-		r.U = math.Sqrt(variance)
-		// Without an uncertainty of the prediction, the stated one of the reading is
-		// all that is known of an untuned model, but too little for a tuned one.
-		r.HasU = r.U > 0 && (p.HasU || !m.Calibrated)
-		a.Rows[i] = r
-		if !r.Intact && r.HasU && p.HasU {
-			rows = append(rows, blind{r.Residual, r.U, m.Degrees})
+			return nil, err
 		}
 	}
+	rows := slices.DeleteFunc(unseen, func(b blind) bool { return b.u == 0 })
 	a.summarise()
 	a.Coverage = coverage(rows)
 	switch {
@@ -143,6 +140,33 @@ func AssessModel(d *fit.Data, m *fit.Model) (*Assessment, error) {
 		a.CoverageReason = "of predictions for these rows"
 	}
 	return a, nil
+}
+
+// rowsPerBlock is the number of rows worth a goroutine.
+const rowsPerBlock = 256
+
+// assessRow predicts an observation by a model that has not seen it.
+func assessRow(o *fit.Observation, m *fit.Model) (Residual, blind, error) {
+	q := o.Query()
+	q.LimitOnly = true
+	p, err := m.Predict(q)
+	if err != nil {
+		return Residual{}, blind{}, &fit.RowError{At: o.At(), Fluid: o.Record.Key, Err: err}
+	}
+	r := Residual{Predicted: p.Temperature, Residual: o.Temperature - p.Temperature, Intact: o.Outcome != measure.Boiled,
+		Log10Flux: p.Log10Flux, HasFlux: p.HasFlux, Warnings: p.Warnings}
+	l := LeftOut{Degrees: p.Degrees, Variance: statedVariance(o, p.Slope)}
+	if p.HasU {
+		l.U, l.HasU = p.U, true
+	}
+	r.U = math.Sqrt(float64(l.U*l.U) + l.Variance)
+	// Without an uncertainty of the prediction, the stated one of the reading is
+	// all that is known of an untuned model, but too little for a tuned one.
+	r.HasU = r.U > 0 && (p.HasU || !m.Calibrated)
+	if r.Intact || !r.HasU || !p.HasU {
+		return r, blind{}, nil
+	}
+	return r, blind{r.Residual, r.U, l.degrees()}, nil
 }
 
 // PlanOf is the plan with which Prepare finds the rows that a model can predict: its

@@ -203,7 +203,7 @@ type calibratedRowJSON struct {
 
 // product renders the calibration.
 func (r *calibration) product(out string, rows bool) *product {
-	p := &product{json: r.json(), csv: r.parameterTable()}
+	p := &product{json: func() any { return r.json() }, csv: r.parameterTable()}
 	summary := table.Facts{
 		{Label: "model", Value: r.Plan.Variant.Name()},
 		{Label: "rows", Value: fmt.Sprintf("%d used, %d excluded; %d with their own flux", len(r.Rows), len(r.Data.Excluded), r.Data.OwnFlux())},

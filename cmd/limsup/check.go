@@ -203,7 +203,7 @@ func checkProduct(d *fit.Data) *product {
 		j.Warnings = append(j.Warnings, w.String())
 		blocks = append(blocks, block{text: "Warning: " + w.String()})
 	}
-	return &product{json: j, csv: full, blocks: blocks}
+	return &product{json: func() any { return j }, csv: full, blocks: blocks}
 }
 
 // checkGroups summarises the observations by fluid and method, in order of names.

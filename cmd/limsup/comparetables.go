@@ -10,7 +10,7 @@ import (
 
 // compareProduct renders a comparison.
 func compareProduct(r *validate.Comparison) *product {
-	p := &product{json: comparedToJSON(r), csv: rankTable(r)}
+	p := &product{json: func() any { return comparedToJSON(r) }, csv: rankTable(r)}
 	add := func(b ...block) { p.blocks = append(p.blocks, b...) }
 	add(block{heading: "Verdict", text: r.Verdict})
 	switch {

@@ -16,7 +16,7 @@ func (d *campaignDesign) product(top int) (*product, error) {
 	}
 	stored, failed := d.stored()
 	best := &d.Singles[0]
-	p := &product{json: d.json(sizes, stored), csv: d.stepTable()}
+	p := &product{json: func() any { return d.json(sizes, stored) }, csv: d.stepTable()}
 	p.blocks = append(p.blocks,
 		block{heading: "Next measurement", text: d.describe(best.Reading) + ". " + best.Why},
 		block{facts: d.facts()},

@@ -118,5 +118,5 @@ func embryoProduct(fluid string, e *nucleation.Embryo, n int) *product {
 		j.Curve = append(j.Curve, curveJSON{p.Radius, p.FreeEnergy})
 		t.Rows = append(t.Rows, []table.Cell{table.Num(p.Radius), table.Num(p.FreeEnergy), table.Num(p.FreeEnergy / e.Barrier)})
 	}
-	return &product{json: j, csv: t, blocks: []block{{facts: facts}, {table: t}, cautionBlock()}}
+	return &product{json: func() any { return j }, csv: t, blocks: []block{{facts: facts}, {table: t}, cautionBlock()}}
 }

@@ -40,7 +40,7 @@ func fluidProduct(lib *fluid.Library, names []string) (*product, error) {
 		t.Notes = append(t.Notes, r.Warnings()...)
 		p.blocks = append(p.blocks, block{table: t})
 	}
-	p.json = j
+	p.json = func() any { return j }
 	return p, nil
 }
 

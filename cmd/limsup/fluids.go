@@ -80,5 +80,5 @@ func fluidsProduct(records []*fluid.Record) *product {
 		t.Rows = append(t.Rows, []table.Cell{table.Text(r.Key), table.Text(r.Name), table.Text(r.Formula), table.Text(r.CAS), table.Num(r.MolarMass.Value * 1e3),
 			table.Num(r.CriticalTemperature.Value), table.Num(r.CriticalPressure.Value / 1e3), table.Num(r.AcentricFactor.Value), table.Bool(r.SurfaceTension != nil), table.Text(r.Hazard)})
 	}
-	return &product{json: j, csv: t, blocks: []block{{table: t}}}
+	return &product{json: func() any { return j }, csv: t, blocks: []block{{table: t}}}
 }

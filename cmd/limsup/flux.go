@@ -129,5 +129,5 @@ func fluxProduct(ph *fit.Physics, P float64, ts []float64) (*product, error) {
 		j.NoLimit = err.Error()
 		text = err.Error() + "."
 	}
-	return &product{json: j, csv: t, blocks: []block{{table: t}, {text: text}, cautionBlock()}}, nil
+	return &product{json: func() any { return j }, csv: t, blocks: []block{{table: t}, {text: text}, cautionBlock()}}, nil
 }

@@ -161,7 +161,7 @@ func isothermProduct(m *eos.Model, iso *eos.Isotherm, volumes []float64) (*produ
 	} else {
 		facts = append(facts, table.Fact{Label: "critical temperature", Value: number(m.Tc, 6), Unit: "K: above it there is one phase only"})
 	}
-	return &product{json: j, csv: t, blocks: []block{{facts: facts}, {table: t}}}, nil
+	return &product{json: func() any { return j }, csv: t, blocks: []block{{facts: facts}, {table: t}}}, nil
 }
 
 // fact is a labelled number.

@@ -18,7 +18,7 @@ import (
 // product is what a command shows: blocks of text and tables for the screen and
 // for Markdown, one table for CSV, one value for JSON.
 type product struct {
-	json   any
+	json   func() any   // made when it is asked for: it may be large
 	csv    *table.Table // the main table
 	blocks []block      // screen and Markdown, in order
 }
@@ -70,7 +70,7 @@ func (p *product) write(w io.Writer, format string, o table.Options) error {
 		e := json.NewEncoder(w)
 		e.SetEscapeHTML(false)
 		e.SetIndent("", "  ")
-		return e.Encode(p.json)
+		return e.Encode(p.json())
 	case table.CSV:
 		return p.csv.Render(w, format, o)
 	}

@@ -169,7 +169,7 @@ func predictProduct(m *fit.Model, queries []fit.Query) (p *product, missing int)
 	if !m.Calibrated {
 		blocks = append(blocks, block{text: "Not calibrated: no uncertainty is known. Published predictions of this kind err by 1 K to 30 K, fluid by fluid."})
 	}
-	return &product{json: j, csv: t, blocks: append(blocks, cautionBlock())}, missing
+	return &product{json: func() any { return j }, csv: t, blocks: append(blocks, cautionBlock())}, missing
 }
 
 func newFailed(m *fit.Model, q *fit.Query, err error) failedJSON {

@@ -207,7 +207,7 @@ func (v *validation) warnings() []string {
 
 // product renders the validation.
 func (v *validation) product() *product {
-	p := &product{json: v.json(), csv: v.rowTable()}
+	p := &product{json: func() any { return v.json() }, csv: v.rowTable()}
 	add := func(b ...block) { p.blocks = append(p.blocks, b...) }
 	facts := table.Facts{{Label: "model", Value: v.modelName()}}
 	facts = append(facts,
