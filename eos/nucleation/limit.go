@@ -179,8 +179,11 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 				switch f.evaluate(end, P, &p) {
 				case fine:
 					if ψ, _ := f.psi(&p, t, false); ψ < 0 {
+						if f.hopeless(&p, t, ψ) {
+							return Limit{}, f.noLimit(P, t, end, end, isSpinodal)
+						}
 						// J peaks a little before the spinodal; the limit may lie before the peak.
-						top, ψ := f.peak(lo, end, func(T float64) (float64, float64) { return f.psiAt(T, P, t, false) })
+						top, ψ := f.peak(lo, end, P, t, false)
 						if ψ < 0 {
 							return Limit{}, f.noLimit(P, t, end, top, isSpinodal)
 						}
@@ -208,40 +211,59 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 	return Limit{}, &ConvergenceError{Fluid: f.name, Equation: f.source(), Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
 }
 
-// psiAt is psi at a state of its own, NaN where there is none.
-func (f *Fluid) psiAt(T, P float64, t Target, atT bool) (ψ, slope float64) {
-	var p point
-	if f.evaluate(T, P, &p) != fine {
-		return math.NaN(), math.NaN()
-	}
-	return f.psi(&p, t, atT)
+// hopeless tells from ψ next to the spinodal that J meets its target nowhere before it
+// either. Going back from there ΔP falls and σ rises, so that ψ+1 can only grow by the
+// root of lnA − lnJ*, and lnA with the logarithms of the density and of B: by less than
+// 1.5 (they double at most).
+func (f *Fluid) hopeless(p *point, t Target, ψ float64) bool {
+	L := p.lnA - f.wanted(p, t)
+	return L > 0 && (1+ψ)*math.Sqrt(1+1.5/L) < 0.95
 }
 
-// peak finds the largest ψ between a state inside and one next to the spinodal,
-// where it is below zero. The density of the liquid, and with it the flux, falls
-// with an infinite slope at the spinodal, as the square root of the distance, so
-// that ψ has a maximum just before it. The search halves the logarithm of the
-// distance on the sign of the slope.
-func (f *Fluid) peak(inside, spinodal float64, psi func(x float64) (ψ, slope float64)) (x, ψ float64) {
+// peak looks for ψ ≥ 0 between a state inside and one next to the spinodal, where it is
+// below zero; given is P_l or, with atT, T. The density of the liquid, and with it the
+// flux, falls with an infinite slope at the spinodal, as the square root of the distance,
+// so that ψ has a maximum just before it. The search halves the logarithm of the distance
+// on the sign of the slope, and ends where ψ is not below zero, or where the tangent to
+// the concave ψ stays below zero up to the closest state with a falling ψ. It returns the
+// state with the largest ψ met.
+func (f *Fluid) peak(inside, spinodal, given float64, t Target, atT bool) (x, ψ float64) {
 	sign := 1.0
 	if spinodal < inside {
 		sign = -1
 	}
 	width := math.Abs(spinodal - inside)
 	far, near := math.Log(width), math.Log(width*1e-9)
-	x = spinodal
-	ψ = math.Inf(-1)
+	falling := 0.0 // distance from the spinodal of the farthest state with a falling ψ
+	x, ψ = spinodal, math.Inf(-1)
+	var p point
 	for range 28 {
 		d := 0.5 * (far + near)
-		at := spinodal - sign*math.Exp(d)
-		v, slope := psi(at)
+		distance := math.Exp(d)
+		at := spinodal - sign*distance
+		T, P := at, given
+		if atT {
+			T, P = given, at
+		}
+		if f.evaluate(T, P, &p) != fine {
+			p.xl, p.xv = 0, 0
+			near = d
+			continue
+		}
+		v, slope := f.psi(&p, t, atT)
 		if v > ψ {
 			x, ψ = at, v
 		}
+		if ψ >= 0 {
+			return x, ψ
+		}
 		if sign*slope > 0 {
 			far = d
+			if v+sign*slope*(distance-falling) < 0 {
+				return x, ψ
+			}
 		} else {
-			near = d
+			near, falling = d, distance
 		}
 	}
 	return x, ψ

@@ -79,8 +79,8 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 				end := lo + 1e-10*math.Abs(hi-lo)
 				if f.evaluate(T, end, &p) == fine {
 					ψ, _ := f.psi(&p, t, true)
-					if ψ < 0 {
-						end, ψ = f.peak(hi, end, func(P float64) (float64, float64) { return f.psiAt(T, P, t, true) })
+					if ψ < 0 && !f.hopeless(&p, t, ψ) {
+						end, ψ = f.peak(hi, end, T, t, true)
 						if ψ >= 0 {
 							lo = end
 						}
