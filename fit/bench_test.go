@@ -13,7 +13,7 @@ import (
 // and fluxes, for each noise.
 func BenchmarkCalibrate(b *testing.B) {
 	lib := library(b)
-	for _, n := range []int{100, 10000} {
+	for _, n := range []int{32, 1000, 10000} {
 		for _, kind := range []fit.NoiseKind{fit.Gaussian, fit.Student, fit.Survival} {
 			rng := rand.New(rand.NewPCG(1, 2))
 			set := &measure.Set{}

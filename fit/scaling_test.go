@@ -81,15 +81,15 @@ func BenchmarkSideBySide(b *testing.B) {
 	})
 }
 
-// BenchmarkScaling follows the processor time over three decades of rows and of
-// replicates of a bootstrap, and over two of parameters.
+// BenchmarkScaling follows the processor time over three decades of rows,
+// parameters and replicates of a bootstrap.
 func BenchmarkScaling(b *testing.B) {
 	p := fit.Plan{Terms: []fit.Term{{Name: fit.Prefactor}}}
 	for _, n := range []int{30, 300, 3000, 30000} {
 		d := prepare(b, rowsOf(b, n), p)
 		clock(b, fmt.Sprintf("rows=%d", n), func() error { _, err := fit.Calibrate(d, p, fit.Options{}); return err })
 	}
-	for _, k := range []int{1, 10, 100} {
+	for _, k := range []int{1, 10, 100, 1000} {
 		set := rowsOf(b, 3000)
 		for i := range set.Rows {
 			set.Rows[i].Batch = fmt.Sprint(i % k)

@@ -1,0 +1,67 @@
+package fit
+
+import (
+	"fmt"
+	"testing"
+
+	"gonum.org/v1/gonum/mat"
+
+	"limsup/data/fluid"
+	"limsup/data/measure"
+)
+
+// BenchmarkGradient evaluates −ln L with its gradient and curvature at ever new
+// parameters: prefactor, surface tension and one slope per fluid, 112 rows.
+func BenchmarkGradient(b *testing.B) {
+	lib, err := fluid.Builtin()
+	if err != nil {
+		b.Fatal(err)
+	}
+	set, err := measure.ReadFile("../data/demo/droplets.csv", measure.Options{KnownFluid: func(name string) (string, error) {
+		r, err := lib.Find(name)
+		if err != nil {
+			return "", err
+		}
+		return r.Key, nil
+	}})
+	if err != nil {
+		b.Fatal(err)
+	}
+	for _, kind := range []NoiseKind{Gaussian, Student, Survival} {
+		p := Plan{Noise: Noise{Kind: kind}, Terms: []Term{{Name: Prefactor}, {Name: SurfaceTension}, {Name: Slope, By: ByFluid}}}
+		if p, err = p.Complete(); err != nil {
+			b.Fatal(err)
+		}
+		d, err := Prepare(set, lib, p)
+		if err != nil {
+			b.Fatal(err)
+		}
+		lay, err := newLayout(&p, d.Observations)
+		if err != nil {
+			b.Fatal(err)
+		}
+		lik, err := newLikelihood(&p, d.Observations, lay, 1)
+		if err != nil {
+			b.Fatal(err)
+		}
+		theta, psi := starts(lay.theta), starts(lay.psi)
+		theta[0] = -5
+		if err := lik.evaluate(theta); err != nil {
+			b.Fatal(err)
+		}
+		lik.hold()
+		variance := lik.variances(psi, nil)
+		grad, curv := make([]float64, len(theta)), mat.NewSymDense(len(theta), nil)
+		b.Run(fmt.Sprintf("%s/%d rows", kind, len(d.Observations)), func(b *testing.B) {
+			b.ReportAllocs()
+			i := 0
+			for b.Loop() {
+				theta[0] = -5 + 1e-3*float64(i%10)
+				i++
+				if _, err := lik.terms(theta, psi, variance, grad, curv, observed); err != nil {
+					b.Fatal(err)
+				}
+			}
+		})
+	}
+}
