@@ -204,11 +204,22 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 			if lo == f.tlo {
 				return Limit{}, &StateError{f.name, f.tlo, P, "the target is exceeded, or there is no liquid, at the coldest temperature for which properties are known already"}
 			}
+			if f.met(lo, P, t, &p) {
+				return f.limitAt(&p, t, i+1, false)
+			}
 			return Limit{}, &ConvergenceError{Fluid: f.name, Equation: f.source(), Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
 		}
 		T = next
 	}
 	return Limit{}, &ConvergenceError{Fluid: f.name, Equation: f.source(), Given: P, Lo: lo, Hi: hi, Residual: residual, Iterations: maxSteps}
+}
+
+// met tells whether J meets the target at a state next to which no other is left. A hair
+// below the spinodal a per-kelvin target leaps from one number to the next by more than
+// the proof of a step allows.
+func (f *Fluid) met(T, P float64, t Target, p *point) bool {
+	const decent = 1e-6 // of ln J
+	return f.evaluate(T, P, p) == fine && p.excess > 0 && math.Abs(p.lnJ()-f.wanted(p, t)) < decent
 }
 
 // hopeless tells from ψ next to the spinodal that J meets its target nowhere before it

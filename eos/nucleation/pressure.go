@@ -105,6 +105,9 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 			}
 		}
 		if w := hi - lo; w <= 4e-15*math.Max(math.Abs(lo), math.Abs(hi)) && !math.IsInf(w, 1) {
+			if f.met(T, hi, t, &p) {
+				return f.limitAt(&p, t, i+1, true)
+			}
 			return Limit{}, &ConvergenceError{Fluid: f.name, Equation: f.source(), Given: T, AtT: true, Lo: lo, Hi: hi, Residual: residual, Iterations: i}
 		}
 		P = next
