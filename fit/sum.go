@@ -7,7 +7,7 @@ import (
 )
 
 // This file adds up −ln L over the rows. The rows are cut into blocks whose number
-// depends on nothing but their own number; blocks are added in order, so that the sum
+// depends on the numbers of rows and of parameters alone; blocks are added in order, so that the sum
 // is the same to the last bit on any number of processors.
 
 const (
@@ -36,7 +36,8 @@ func (l *likelihood) addRows(noise *law, r func(i int) float64, variance []float
 			}
 		}
 	}
-	count := min(mostBlocks, n/rowsPerBlock)
+	// Adding up a matrix of p² elements takes as long as p²/100 rows.
+	count := min(mostBlocks, n/max(rowsPerBlock, len(grad)*len(grad)/100))
 	if count < 2 {
 		b := block{grad: grad, curv: curv}
 		add(&b, 0, n)
