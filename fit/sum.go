@@ -26,6 +26,9 @@ type block struct {
 // with respect to θ to grad and curv where these are not nil.
 func (l *likelihood) addRows(noise *law, r func(i int) float64, variance []float64, grad []float64, curv *mat.SymDense, kind curvature) float64 {
 	n := len(l.obs)
+	if len(grad) == 0 { // nothing to derive by
+		grad, curv = nil, nil
+	}
 	add := func(b *block, lo, hi int) {
 		for i := lo; i < hi; i++ {
 			d := l.density(noise, i, r(i), variance[i])

@@ -1,6 +1,7 @@
 package fit_test
 
 import (
+	"math"
 	"math/rand/v2"
 	"testing"
 
@@ -23,5 +24,27 @@ func TestSurvivalSameBytes(t *testing.T) {
 				t.Errorf("%d workers: %s = %x ± %x, with one %x ± %x", w, want.Parameters[i].Label(), got.Parameters[i].Value, got.Parameters[i].U, want.Parameters[i].Value, want.Parameters[i].U)
 			}
 		}
+	}
+}
+
+// TestOnlySpread: with no location free, the spread of the residuals about the untuned
+// limit is their root mean square, also where rows are added in blocks.
+func TestOnlySpread(t *testing.T) {
+	lib := library(t)
+	set := droplets(t, untuned(), rand.New(rand.NewPCG(8, 2)), 100, 0.1, 1e5) // 400 rows: three blocks
+	for i := range set.Rows {
+		set.Rows[i].UTemperature, set.Rows[i].HasUTemperature = 0, false
+	}
+	p := plan(t, "spread")
+	p.Fixed = []fit.Setting{{Name: fit.Threshold, Value: 12}}
+	c := calibrate(t, set, lib, p, fit.Options{})
+	if c.Locations != 0 || len(c.Parameters) != 1 {
+		t.Fatalf("%d locations, %d parameters; want the spread alone", c.Locations, len(c.Parameters))
+	}
+	// At its maximum the likelihood of n normal residuals has s² = Σr²/n and u = s/√(2n);
+	// the search ends within 1e-7 u, the curvature is one of differences.
+	s, u := c.RMSE, c.RMSE/math.Sqrt(2*float64(len(c.Rows)))
+	if e := &c.Parameters[0]; math.Abs(e.Value-s) > 1e-6*u || math.Abs(e.U-u) > 1e-4*u {
+		t.Errorf("spread %.10g ± %.6g, want %.10g ± %.6g", e.Value, e.U, s, u)
 	}
 }
