@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"slices"
 
 	"gonum.org/v1/gonum/mat"
 
@@ -109,10 +110,11 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 		return nil, err
 	}
 	if p.DefaultTerms && len(d.Observations) > 0 && d.OwnFlux() == len(d.Observations) {
-		for i := range p.Terms {
-			if p.Terms[i].Name == Threshold {
-				p.Terms[i].Name = Prefactor
-			}
+		at := slices.IndexFunc(p.Terms, func(t Term) bool { return t.Name == Threshold })
+		if p.fixed(Prefactor) { // which leaves the spread alone
+			p.Terms = slices.Delete(p.Terms, at, at+1)
+		} else {
+			p.Terms[at].Name = Prefactor
 		}
 	}
 	if len(d.Observations) == 0 {

@@ -35,8 +35,8 @@ func TestOnlySpread(t *testing.T) {
 	for i := range set.Rows {
 		set.Rows[i].UTemperature, set.Rows[i].HasUTemperature = 0, false
 	}
-	p := plan(t, "spread")
-	p.Fixed = []fit.Setting{{Name: fit.Threshold, Value: 12}}
+	p := plan(t)
+	p.Fixed = []fit.Setting{{Name: fit.Prefactor, Value: 0}} // every row has its own flux
 	c := calibrate(t, set, lib, p, fit.Options{})
 	if c.Locations != 0 || len(c.Parameters) != 1 {
 		t.Fatalf("%d locations, %d parameters; want the spread alone", c.Locations, len(c.Parameters))
