@@ -1,8 +1,10 @@
 package fit
 
 import (
+	"errors"
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"gonum.org/v1/gonum/mat"
@@ -100,7 +102,7 @@ func (c *Calibration) Profile(label string, level float64) (Range, error) {
 		for i := range c.theta {
 			point.StdErr[i] = c.Parameters[i].U
 		}
-		iv, err = leastsq.Profile(c.objective(lik, lik.variances(c.psi, nil)), point, at, distuv.ChiSquared{K: 1}.CDF(t*t), leastsq.Settings{})
+		iv, err = leastsq.Profile(c.inside(lik, c.objective(lik, lik.variances(c.psi, nil))), point, at, distuv.ChiSquared{K: 1}.CDF(t*t), leastsq.Settings{})
 		r.Lower, r.Upper, r.LowerEnd, r.UpperEnd = iv.Lower, iv.Upper, iv.LowerEnd, iv.UpperEnd
 	} else {
 		var z *linearised
@@ -123,6 +125,30 @@ func (c *Calibration) Profile(label string, level float64) (Range, error) {
 	}
 	r.Warnings = append(r.Warnings, iv.Warnings...)
 	return r, err
+}
+
+// errSpinodal ends a profile.
+var errSpinodal = errors.New("the flux of a row does not reach its target before the spinodal")
+
+// inside is an objective that has no value where the spinodal stands in for a kinetic
+// limit, unless it does so at the estimates already. There a row no longer depends on its
+// flux, and −ln L may fall again towards parameters with which the model predicts nothing.
+func (c *Calibration) inside(lik *likelihood, o leastsq.Objective) leastsq.Objective {
+	beyond := func() bool {
+		return slices.ContainsFunc(lik.limit, func(l limitValue) bool { return l.atSpinodal })
+	}
+	if beyond() {
+		return o
+	}
+	eval := o.Eval
+	o.Eval = func(theta, grad []float64, curv *mat.SymDense) (float64, error) {
+		v, err := eval(theta, grad, curv)
+		if err == nil && beyond() {
+			return 0, errSpinodal
+		}
+		return v, err
+	}
+	return o
 }
 
 // outer is A as a function of w, see estimate.

@@ -1,6 +1,7 @@
 package fit_test
 
 import (
+	"errors"
 	"flag"
 	"fmt"
 	"math"
@@ -12,6 +13,7 @@ import (
 	"limsup/data/fluid"
 	"limsup/data/measure"
 	"limsup/fit"
+	"limsup/fit/leastsq"
 )
 
 // Simulation studies: data are drawn from a known truth many times, and the share of
@@ -135,6 +137,36 @@ var studyCases = []studyCase{
 		}
 		return checkStudy(lib, set, truth, fit.Plan{Terms: terms(t, "threshold", "slope")}, []string{"threshold", "slope"},
 			func(T, _ float64) float64 { return T + 0.6*rng.NormFloat64() }, nil)
+	}},
+	{"gaussian, a dozen rows, by profile", func(t testing.TB, lib *fluid.Library, rng *rand.Rand) (map[string]bool, error) {
+		wanted := map[string]float64{fit.Threshold: 11, fit.Slope: 0.97}
+		truth := untuned(fit.Setting{Name: fit.Threshold, Value: 11}, fit.Setting{Name: fit.Slope, Value: 0.97})
+		set := studySet(1, nil)
+		if err := fillStudy(lib, truth, set, func(fit.Prediction, fit.Sensitivity) float64 { return math.Hypot(0.3, 0.6) * rng.NormFloat64() }); err != nil {
+			return nil, err
+		}
+		p := fit.Plan{Terms: terms(t, "threshold", "slope")}
+		d, err := fit.Prepare(set, lib, p)
+		if err != nil {
+			return nil, err
+		}
+		c, err := fit.Calibrate(d, p, fit.Options{Workers: 1})
+		if err != nil {
+			return nil, err
+		}
+		out := map[string]bool{}
+		for name, want := range wanted {
+			r, err := c.Profile(name, 0.95)
+			var lower *leastsq.LowerMinimumError
+			if errors.As(err, &lower) && len(c.Warnings) > 0 {
+				continue // estimates against the spinodal, and said so: no interval is given
+			}
+			if err != nil {
+				return nil, err
+			}
+			out[name] = (r.LowerEnd == leastsq.Unbounded || r.Lower <= want) && (r.UpperEnd == leastsq.Unbounded || want <= r.Upper)
+		}
+		return out, nil
 	}},
 	{"student, one row in ten with five times the error", func(t testing.TB, lib *fluid.Library, rng *rand.Rand) (map[string]bool, error) {
 		truth := untuned(fit.Setting{Name: fit.Threshold, Value: 11}, fit.Setting{Name: fit.Slope, Value: 0.97})

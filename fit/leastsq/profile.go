@@ -137,8 +137,7 @@ func (p *profile) end(sign float64, x []float64) (float64, End, error) {
 			return 0, 0, err
 		}
 		if f > 0 {
-			v, err := p.cross(in, fin, out, f, warm)
-			return v, Crossed, err
+			return p.cross(in, fin, out, f, warm)
 		}
 		in, fin = out, f
 		step *= 2
@@ -162,8 +161,7 @@ func (p *profile) edge(in, fin, out float64, warm []float64) (float64, End, erro
 			return 0, 0, err
 		}
 		if f > 0 {
-			v, err := p.cross(in, fin, mid, f, warm)
-			return v, Crossed, err
+			return p.cross(in, fin, mid, f, warm)
 		}
 		in, fin = mid, f
 	}
@@ -172,7 +170,7 @@ func (p *profile) edge(in, fin, out float64, warm []float64) (float64, End, erro
 
 // cross finds the zero of rise in a bracket by false position, halving the value
 // of an end that stays (the Illinois rule); rise is nearly linear.
-func (p *profile) cross(a, fa, b, fb float64, warm []float64) (float64, error) {
+func (p *profile) cross(a, fa, b, fb float64, warm []float64) (float64, End, error) {
 	kept := 0
 	for range bisections {
 		v := b - fb*(b-a)/(fb-fa)
@@ -183,12 +181,15 @@ func (p *profile) cross(a, fa, b, fb float64, warm []float64) (float64, error) {
 			break
 		}
 		f, err := p.rise(v, warm)
+		if _, failed := err.(*EvaluationError); failed {
+			return p.edge(a, fa, v, warm)
+		}
 		if err != nil {
-			return 0, err
+			return 0, 0, err
 		}
 		switch {
 		case math.Abs(f) <= rootTolerance:
-			return v, nil
+			return v, Crossed, nil
 		case f > 0:
 			b, fb = v, f
 			if kept == 1 {
@@ -203,7 +204,7 @@ func (p *profile) cross(a, fa, b, fb float64, warm []float64) (float64, error) {
 			kept = -1
 		}
 	}
-	return b, nil
+	return b, Crossed, nil
 }
 
 // rise is √(2(minimum over the others − min)) − √χ² with the parameter at v.
@@ -242,6 +243,7 @@ func (p *profile) inner(v float64, warm []float64) (float64, error) {
 		}
 	}
 	g, h := make([]float64, n), mat.NewSymDense(n, nil)
+	p.follow(v, warm, others, params, g, h)
 	r, err := Minimize(Objective{Params: params, Size: p.o.Size, Eval: func(x, grad []float64, curv *mat.SymDense) (float64, error) {
 		p.theta[k] = v
 		for a, i := range others {
@@ -276,4 +278,39 @@ func (p *profile) inner(v float64, warm []float64) (float64, error) {
 		warm[i] = r.X[a]
 	}
 	return r.Value, nil
+}
+
+// follow moves the starts of the other parameters with the parameter along the valley of
+// the objective, −H_oo⁻¹H_ok(v − v_warm), if there is a value where that leads.
+func (p *profile) follow(v float64, warm []float64, others []int, params []Param, g []float64, h *mat.SymDense) {
+	k := p.index
+	p.iv.Evaluations++
+	if _, err := p.o.Eval(warm, g, h); err != nil {
+		return
+	}
+	m := len(others)
+	oo, ok := mat.NewSymDense(m, nil), mat.NewVecDense(m, nil)
+	for a, i := range others {
+		ok.SetVec(a, h.At(i, k))
+		for c := a; c < m; c++ {
+			oo.SetSym(a, c, h.At(i, others[c]))
+		}
+	}
+	var chol mat.Cholesky
+	var slope mat.VecDense
+	if !chol.Factorize(oo) || chol.SolveVecTo(&slope, ok) != nil {
+		return
+	}
+	copy(p.theta, warm)
+	p.theta[k] = v
+	for a, i := range others {
+		p.theta[i] = math.Min(math.Max(warm[i]-slope.AtVec(a)*(v-warm[k]), p.b.lower[i]), p.b.upper[i])
+	}
+	p.iv.Evaluations++
+	if f, err := p.o.Eval(p.theta, nil, nil); err != nil || !finite(f) {
+		return
+	}
+	for a, i := range others {
+		params[a].Start = p.theta[i]
+	}
 }

@@ -132,3 +132,35 @@ func TestCheckGradient(t *testing.T) {
 		t.Errorf("%+v, %v", d, err)
 	}
 }
+
+// A narrow valley y = −0.99x with nothing but failures beside it is followed to its ends,
+// ±1.959963984540054 for a normal law of unit variances; where the valley itself is cut
+// off, so is the interval.
+func TestProfileFollowsValley(t *testing.T) {
+	const ρ = -0.99
+	for _, tt := range []struct {
+		cut, end float64
+		kind     End
+	}{{math.Inf(1), 1.959963984540054, Crossed}, {1.2, 1.2, Unevaluated}} {
+		o := Objective{Params: []Param{{Name: "x"}, {Name: "y"}}, Eval: func(θ, grad []float64, curv *mat.SymDense) (float64, error) {
+			x, y := θ[0], θ[1]
+			if math.Abs(x+y) > 0.4 || x > tt.cut {
+				return 0, errors.New("no value here")
+			}
+			w := 1 / (1 - ρ*ρ)
+			if grad != nil {
+				grad[0], grad[1] = w*(x-ρ*y), w*(y-ρ*x)
+			}
+			if curv != nil {
+				curv.SetSym(0, 0, w)
+				curv.SetSym(1, 1, w)
+				curv.SetSym(0, 1, -ρ*w)
+			}
+			return 0.5 * w * (x*x - 2*ρ*x*y + y*y), nil
+		}}
+		iv, err := Profile(o, &Result{X: []float64{0, 0}, StdErr: []float64{1, 1}}, 0, 0.95, Settings{})
+		if err != nil || iv.LowerEnd != Crossed || iv.UpperEnd != tt.kind || math.Abs(iv.Lower+1.959963984540054) > 1e-6 || math.Abs(iv.Upper-tt.end) > 1e-6 {
+			t.Errorf("%+v, %v; want −1.95996 to %g", iv, err, tt.end)
+		}
+	}
+}
