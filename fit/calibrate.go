@@ -111,9 +111,11 @@ func Calibrate(d *Data, p Plan, o Options) (*Calibration, error) {
 	}
 	if p.DefaultTerms && len(d.Observations) > 0 && d.OwnFlux() == len(d.Observations) {
 		at := slices.IndexFunc(p.Terms, func(t Term) bool { return t.Name == Threshold })
-		if p.fixed(Prefactor) { // which leaves the spread alone
+		switch {
+		case at < 0: // the plan of an earlier calibration
+		case p.fixed(Prefactor): // which leaves the spread alone
 			p.Terms = slices.Delete(p.Terms, at, at+1)
-		} else {
+		default:
 			p.Terms[at].Name = Prefactor
 		}
 	}
