@@ -105,6 +105,7 @@ func (m *Model) uncertainty(out *Prediction, q *Query, l *limitValue, found *[lo
 	total := limit
 	total.add(s*s, ν)
 	out.Degrees = total.degrees()
+	out.spread, out.steepness = s, l.steepness
 	m.scatter(q, l, s, out)
 	out.UPressure = math.Abs(out.U / l.dTdP)
 	if q.LimitOnly {
@@ -167,6 +168,37 @@ func (m *Model) reach(q *Query, l *limitValue, s float64, out *Prediction) (low,
 	}
 	w := student(0.975, ν) * out.U
 	return -w, w
+}
+
+// Level is the two-sided level of the interval of a new reading that ends r kelvins from
+// the limit p of the query q, for a reading of stated variance v in K². A reading lies
+// inside all intervals of a higher level. The law is that of Predict, whose scale is
+// widened for the uncertainty of the limit as its interval of 95 % asks for. p must have
+// an uncertainty.
+func (m *Model) Level(q *Query, p *Prediction, r, v float64) float64 {
+	var total sum
+	total.add(p.ULimit*p.ULimit+p.spread*p.spread, p.Degrees)
+	total.add(v, math.Inf(1)) // known
+	ν, s := total.degrees(), math.Hypot(p.spread, math.Sqrt(v))
+	switch κ := p.steepness; {
+	case m.Noise.Kind == Student:
+		n := m.Noise.Degrees
+		u := p.ULimit * student(0.975, ν) / student(0.975, n)
+		return central(math.Abs(r)/math.Hypot(u, s), n)
+	case m.Noise.Kind == Survival && q.Hazard > 0 && κ > 0:
+		blur := math.Hypot(p.ULimit, s) * student(0.975, ν) / student(0.975, manyDegrees)
+		above, _, _ := blurred(κ*r+math.Log(q.Hazard), κ*blur, true)
+		return math.Abs(1 - 2*math.Exp(above))
+	}
+	return central(math.Abs(r)/math.Hypot(p.ULimit, s), ν)
+}
+
+// central is the probability of Student's t between −z and z.
+func central(z, ν float64) float64 {
+	if ν >= manyDegrees {
+		return math.Erf(z / math.Sqrt2)
+	}
+	return 2*distuv.StudentsT{Mu: 0, Sigma: 1, Nu: ν}.CDF(z) - 1
 }
 
 // poolDegrees are those of the variance between groups of a pooled parameter.

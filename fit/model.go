@@ -144,6 +144,8 @@ type Prediction struct {
 	AtSpinodal             bool // the spinodal stands in for a kinetic limit, see Query.OrSpinodal
 	Extrapolated           bool
 	Warnings               []string
+
+	spread, steepness float64 // of a new reading in K; κ in 1/K
 }
 
 // lookup finds the value of a parameter for a query: the index of its estimate,

@@ -316,12 +316,12 @@ func (c *Comparison) judge(m *member, cal *fit.Calibration, cv *CrossValidation)
 	}
 	e.left, _ = e.CV.scores()
 	var rows []reading
-	var unseen []blind
+	var unseen []float64
 	for i := range cal.Rows {
 		x, l := &cal.Rows[i], &e.CV.Rows[i]
 		rows = append(rows, reading{x.Residual, l.Variance, !l.Boiled})
-		if u, ok := l.Total(); ok && l.Boiled {
-			unseen = append(unseen, blind{l.Tuned, u, l.degrees()})
+		if _, ok := l.Total(); ok && l.Boiled {
+			unseen = append(unseen, l.Level)
 		}
 	}
 	e.weigh(rows)
@@ -389,9 +389,10 @@ func (c *Comparison) addBaselines() {
 	}
 }
 
-// spreadElsewhere gives each row of a rule the spread found on the other folds.
-func (c *Comparison) spreadElsewhere(rows []reading) []blind {
-	var out []blind
+// spreadElsewhere gives each row of a rule the level that it has under the spread found on
+// the other folds.
+func (c *Comparison) spreadElsewhere(rows []reading) []float64 {
+	var out []float64
 	for k := range c.Folds.Names {
 		var others []reading
 		for i, r := range rows {
@@ -405,7 +406,7 @@ func (c *Comparison) spreadElsewhere(rows []reading) []blind {
 		}
 		for i, r := range rows {
 			if c.Folds.Of[i] == k && !r.intact {
-				out = append(out, blind{r.e, math.Sqrt(float64(s*s) + r.v), float64(len(others))})
+				out = append(out, level(r.e, math.Sqrt(float64(s*s)+r.v), float64(len(others))))
 			}
 		}
 	}

@@ -21,33 +21,20 @@ type Coverage struct {
 // nominals are the levels that are reported.
 var nominals = [...]float64{0.5, 0.8, 0.95}
 
-// blind is a residual of a row that the model had not seen.
-type blind struct {
-	e, u    float64 // K
-	degrees float64 // of freedom of u²; 0 is many
-}
-
 // level is that of the narrowest two-sided Student's t interval ±t·u that holds e.
-func (b *blind) level() float64 {
-	z := math.Abs(b.e) / b.u
-	if b.degrees == 0 {
-		return math.Erf(z / math.Sqrt2)
-	}
-	return 2*distuv.StudentsT{Mu: 0, Sigma: 1, Nu: b.degrees}.CDF(z) - 1
+func level(e, u, degrees float64) float64 {
+	return 2*distuv.StudentsT{Mu: 0, Sigma: 1, Nu: degrees}.CDF(math.Abs(e)/u) - 1
 }
 
-// coverage counts the rows inside Student's t intervals of half width t·u.
-func coverage(rows []blind) []Coverage {
-	if len(rows) == 0 {
+// coverage counts the rows inside the intervals; levels are those of the narrowest
+// interval that holds each row.
+func coverage(levels []float64) []Coverage {
+	if len(levels) == 0 {
 		return nil
-	}
-	levels := make([]float64, len(rows))
-	for i := range rows {
-		levels[i] = rows[i].level()
 	}
 	var out []Coverage
 	for _, nominal := range nominals {
-		c := Coverage{Nominal: nominal, Rows: len(rows)}
+		c := Coverage{Nominal: nominal, Rows: len(levels)}
 		for _, l := range levels {
 			if l <= nominal {
 				c.Inside++

@@ -35,7 +35,7 @@ type LeftOut struct {
 	U                 float64 // standard uncertainty of the tuned prediction, spread included, K
 	HasU              bool
 	Boiled            bool    // intact rows are predicted but do not enter the errors
-	Degrees           float64 // of freedom of U²
+	Level             float64 // of the narrowest interval of the prediction that holds the reading
 	Variance          float64 // of the reading from its stated uncertainties, K²
 }
 
@@ -44,16 +44,6 @@ type LeftOut struct {
 func (l *LeftOut) Total() (u float64, ok bool) {
 	u = math.Sqrt(float64(l.U*l.U) + l.Variance)
 	return u, l.HasU && u > 0
-}
-
-// degrees are those of the square of Total by Welch and Satterthwaite (JCGM 100, G.4.1):
-// the stated variance counts as known.
-func (l *LeftOut) degrees() float64 {
-	if u2 := l.U * l.U; u2 > 0 {
-		x := 1 + l.Variance/u2
-		return l.Degrees * x * x
-	}
-	return l.Degrees
 }
 
 // CrossValidation compares the tuned model with the untuned one on rows that were
@@ -216,8 +206,12 @@ func leftOut(o *fit.Observation, m, untuned *fit.Model) (LeftOut, error) {
 	if err != nil {
 		return LeftOut{}, fmt.Errorf("%s: %w", o.At(), err)
 	}
-	return LeftOut{Tuned: o.Temperature - tuned.Temperature, Untuned: o.Temperature - before.Temperature,
-		UntunedAtSpinodal: before.AtSpinodal, U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Degrees: tuned.Degrees, Variance: statedVariance(o, tuned.Slope)}, nil
+	l := LeftOut{Tuned: o.Temperature - tuned.Temperature, Untuned: o.Temperature - before.Temperature,
+		UntunedAtSpinodal: before.AtSpinodal, U: tuned.U, HasU: tuned.HasU, Boiled: o.Outcome == measure.Boiled, Variance: statedVariance(o, tuned.Slope)}
+	if _, ok := l.Total(); ok {
+		l.Level = m.Level(&q, &tuned, l.Tuned, l.Variance)
+	}
+	return l, nil
 }
 
 // statedVariance is that of a residual from the stated uncertainties of its reading,

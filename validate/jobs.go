@@ -52,7 +52,7 @@ type LeftOutRows struct {
 	AtSpinodal []bool    `json:"untuned_at_spinodal"`
 	U          []float64 `json:"standard_uncertainty_K"`
 	HasU       []bool    `json:"has_uncertainty"`
-	Degrees    []float64 `json:"degrees_of_freedom"`
+	Level      []float64 `json:"level"`
 	Variance   []float64 `json:"variance_K2"`
 }
 
@@ -212,7 +212,7 @@ func (w *Jobs) leftOutRows(cv *CrossValidation, k int) *LeftOutRows {
 			r.Tuned, r.Untuned = append(r.Tuned, x.Tuned), append(r.Untuned, x.Untuned)
 			r.AtSpinodal = append(r.AtSpinodal, x.UntunedAtSpinodal)
 			r.U, r.HasU = append(r.U, x.U), append(r.HasU, x.HasU)
-			r.Degrees, r.Variance = append(r.Degrees, x.Degrees), append(r.Variance, x.Variance)
+			r.Level, r.Variance = append(r.Level, x.Level), append(r.Variance, x.Variance)
 		}
 	}
 	return r
@@ -226,7 +226,7 @@ func (r *LeftOutRows) fill(cv *CrossValidation, k int, obs []fit.Observation) er
 			n++
 		}
 	}
-	for _, have := range []int{len(r.Tuned), len(r.Untuned), len(r.AtSpinodal), len(r.U), len(r.HasU), len(r.Degrees), len(r.Variance)} {
+	for _, have := range []int{len(r.Tuned), len(r.Untuned), len(r.AtSpinodal), len(r.U), len(r.HasU), len(r.Level), len(r.Variance)} {
 		if have != n {
 			return fmt.Errorf("a column of %d values for the %d rows of the fold", have, n)
 		}
@@ -235,7 +235,7 @@ func (r *LeftOutRows) fill(cv *CrossValidation, k int, obs []fit.Observation) er
 	for i, f := range cv.Folds.Of {
 		if f == k {
 			cv.Rows[i] = LeftOut{Index: i, Fold: k, Tuned: r.Tuned[n], Untuned: r.Untuned[n], UntunedAtSpinodal: r.AtSpinodal[n],
-				U: r.U[n], HasU: r.HasU[n], Boiled: obs[i].Outcome == measure.Boiled, Degrees: r.Degrees[n], Variance: r.Variance[n]}
+				U: r.U[n], HasU: r.HasU[n], Boiled: obs[i].Outcome == measure.Boiled, Level: r.Level[n], Variance: r.Variance[n]}
 			n++
 		}
 	}

@@ -28,7 +28,7 @@ type Residual struct {
 	HasFlux           bool
 	Intact            bool
 	Warnings          []string // of the prediction: extrapolation
-	leftOutDegrees    float64
+	leftOutLevel      float64
 }
 
 // Standardised is Residual/U; ok is false without U.
@@ -80,7 +80,7 @@ func Assess(c *fit.Calibration, cv *CrossValidation) *Assessment {
 		r.HasU = r.U > 0
 		if cv != nil {
 			l := &cv.Rows[i]
-			r.LeftOut, r.HasLeftOut, r.leftOutDegrees = l.Tuned, true, l.degrees()
+			r.LeftOut, r.HasLeftOut, r.leftOutLevel = l.Tuned, true, l.Level
 			if u, ok := l.Total(); ok {
 				r.LeftOutU = u
 			}
@@ -88,10 +88,10 @@ func Assess(c *fit.Calibration, cv *CrossValidation) *Assessment {
 		a.Rows[i] = r
 	}
 	a.summarise()
-	var rows []blind
+	var rows []float64
 	for i := range a.Rows {
 		if r := &a.Rows[i]; !r.Intact && r.LeftOutU > 0 {
-			rows = append(rows, blind{r.LeftOut, r.LeftOutU, r.leftOutDegrees})
+			rows = append(rows, r.leftOutLevel)
 		}
 	}
 	a.Coverage = coverage(rows)
@@ -112,7 +112,7 @@ func Assess(c *fit.Calibration, cv *CrossValidation) *Assessment {
 // Errors: *fit.RowError for a row that the model cannot predict.
 func AssessModel(d *fit.Data, m *fit.Model) (*Assessment, error) {
 	a := &Assessment{Data: d, Model: m, Rows: make([]Residual, len(d.Observations))}
-	unseen := make([]blind, len(d.Observations)) // u = 0: none
+	unseen := make([]float64, len(d.Observations)) // below zero: no interval
 	blocks := min(runtime.GOMAXPROCS(0), 1+len(d.Observations)/rowsPerBlock)
 	errs := make([]error, blocks)
 	parallel(blocks, blocks, func(b int) {
@@ -128,7 +128,7 @@ func AssessModel(d *fit.Data, m *fit.Model) (*Assessment, error) {
 			return nil, err
 		}
 	}
-	rows := slices.DeleteFunc(unseen, func(b blind) bool { return b.u == 0 })
+	rows := slices.DeleteFunc(unseen, func(level float64) bool { return level < 0 })
 	a.summarise()
 	a.Coverage = coverage(rows)
 	switch {
@@ -145,17 +145,18 @@ func AssessModel(d *fit.Data, m *fit.Model) (*Assessment, error) {
 // rowsPerBlock is the number of rows worth a goroutine.
 const rowsPerBlock = 256
 
-// assessRow predicts an observation by a model that has not seen it.
-func assessRow(o *fit.Observation, m *fit.Model) (Residual, blind, error) {
+// assessRow predicts an observation by a model that has not seen it. level is that of the
+// narrowest interval of the prediction that holds the reading, below zero where there is none.
+func assessRow(o *fit.Observation, m *fit.Model) (r Residual, level float64, err error) {
 	q := o.Query()
 	q.LimitOnly = true
 	p, err := m.Predict(q)
 	if err != nil {
-		return Residual{}, blind{}, &fit.RowError{At: o.At(), Fluid: o.Record.Key, Err: err}
+		return Residual{}, -1, &fit.RowError{At: o.At(), Fluid: o.Record.Key, Err: err}
 	}
-	r := Residual{Predicted: p.Temperature, Residual: o.Temperature - p.Temperature, Intact: o.Outcome != measure.Boiled,
+	r = Residual{Predicted: p.Temperature, Residual: o.Temperature - p.Temperature, Intact: o.Outcome != measure.Boiled,
 		Log10Flux: p.Log10Flux, HasFlux: p.HasFlux, Warnings: p.Warnings}
-	l := LeftOut{Degrees: p.Degrees, Variance: statedVariance(o, p.Slope)}
+	l := LeftOut{Variance: statedVariance(o, p.Slope)}
 	if p.HasU {
 		l.U, l.HasU = p.U, true
 	}
@@ -164,9 +165,9 @@ func assessRow(o *fit.Observation, m *fit.Model) (Residual, blind, error) {
 	// all that is known of an untuned model, but too little for a tuned one.
 	r.HasU = r.U > 0 && (p.HasU || !m.Calibrated)
 	if r.Intact || !r.HasU || !p.HasU {
-		return r, blind{}, nil
+		return r, -1, nil
 	}
-	return r, blind{r.Residual, r.U, l.degrees()}, nil
+	return r, m.Level(&q, &p, r.Residual, l.Variance), nil
 }
 
 // PlanOf is the plan with which Prepare finds the rows that a model can predict: its

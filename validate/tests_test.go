@@ -183,7 +183,8 @@ func TestWilsonAgainstPublishedValues(t *testing.T) {
 // Half widths of t intervals from the tables of Student's t: t(0.975; 10) = 2.228, the
 // normal one 1.960 (common practice).
 func TestCoverageCounts(t *testing.T) {
-	got := coverage([]blind{{2.22, 1, 10}, {2.24, 1, 10}, {-1.95, 1, 0}, {-1.97, 1, 0}})
+	const many = 1e6
+	got := coverage([]float64{level(2.22, 1, 10), level(2.24, 1, 10), level(-1.95, 1, many), level(-1.97, 1, many)})
 	if len(got) != 3 || got[2].Inside != 2 || got[2].Rows != 4 || got[2].Observed != 0.5 || got[0].Inside != 0 {
 		t.Errorf("%+v", got)
 	}
