@@ -264,6 +264,11 @@ type limitValue struct {
 
 // limit predicts the limit at P for a row target or, without one, the threshold.
 func (ph *Physics) limit(P float64, t nucleation.Target, own bool, guess float64) (limitValue, error) {
+	return ph.find(P, t, own, guess, false)
+}
+
+// find is limit; a brief error does not tell how far from its target the flux stays.
+func (ph *Physics) find(P float64, t nucleation.Target, own bool, guess float64, brief bool) (limitValue, error) {
 	var l limitValue
 	if ph.Variant.Limit == Spinodal {
 		return ph.spinodal(P)
@@ -271,7 +276,11 @@ func (ph *Physics) limit(P float64, t nucleation.Target, own bool, guess float64
 	if !own {
 		t = nucleation.Threshold(ph.Threshold)
 	}
-	k, err := ph.Fluid.KineticLimit(P, t, guess)
+	find := ph.Fluid.KineticLimit
+	if brief {
+		find = ph.Fluid.LimitIfAny
+	}
+	k, err := find(P, t, guess)
 	if err != nil {
 		return l, err
 	}
@@ -316,7 +325,7 @@ func (ph *Physics) spinodal(P float64) (limitValue, error) {
 // predicted limit a continuous function of the parameters, so that a search is
 // not stopped by the edge of the region in which every row has a kinetic limit.
 func (ph *Physics) limitOrSpinodal(P float64, t nucleation.Target, own bool, guess float64) (limitValue, error) {
-	l, err := ph.limit(P, t, own, guess)
+	l, err := ph.find(P, t, own, guess, true)
 	if e, ok := err.(*nucleation.NoLimitError); ok && e.Spinodal {
 		l, err = ph.spinodal(P)
 		l.atSpinodal = true

@@ -264,10 +264,12 @@ func TestPeak(t *testing.T) {
 			}
 		}
 	}
-	over, err := f.KineticLimit(atmosphere, Target{LnJ: peak + 1e-3}, 0)
-	var no *NoLimitError
-	if !errors.As(err, &no) || math.Abs(no.Reached*math.Ln10-peak) > 1e-3 {
-		t.Errorf("above the peak: %g K, %v; want none, with ln J reaching %g", over.T, err, peak)
+	for _, above := range []float64{1e-3, 1, 20} { // the last one is hopeless at first sight
+		over, err := f.KineticLimit(atmosphere, Target{LnJ: peak + above}, 0)
+		var no *NoLimitError
+		if !errors.As(err, &no) || math.Abs(no.Reached*math.Ln10-peak) > 1e-3 {
+			t.Errorf("%g above the peak: %g K, %v; want none, with ln J reaching %g", above, over.T, err, peak)
+		}
 	}
 }
 

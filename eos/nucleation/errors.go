@@ -25,10 +25,12 @@ type NoLimitError struct {
 	Given     float64 // the pressure in Pa or, with AtT, the temperature in K
 	AtT       bool
 	Threshold float64 // log₁₀(J*/(m⁻³s⁻¹)); of a per-kelvin target that at the end of the search, if Known
-	Reached   float64 // log₁₀J at the end of the search, where known
+	Reached   float64 // log₁₀J where it comes closest, where known
 	Known     bool    // Reached is a number
 	End       float64 // where the search ended: K, or Pa with AtT
 	Spinodal  bool    // the end is the spinodal, else the end of the properties
+
+	inside float64 // where the flux is known to be below its target, K
 }
 
 func (e *NoLimitError) Error() string {

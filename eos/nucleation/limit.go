@@ -112,6 +112,18 @@ func (d *drift) slope(t *Target, x, ψ, lnA, wanted, given float64) (slope, tole
 // a number; *StateError when J exceeds J*, or no liquid is left, at the cold end of the properties;
 // *ConvergenceError.
 func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) {
+	l, err := f.LimitIfAny(P, t, guess)
+	if e, ok := err.(*NoLimitError); ok && e.Known && e.inside < e.End {
+		top, _ := f.peak(e.inside, e.End, P, t, false, true)
+		err = f.noLimit(P, t, e.inside, e.End, top, e.Spinodal)
+	}
+	return l, err
+}
+
+// LimitIfAny is KineticLimit for those who do not ask how far from its target the flux
+// stays: Reached of its *NoLimitError is that of some state before the end and not the
+// largest, which takes three times as long to find.
+func (f *Fluid) LimitIfAny(P float64, t Target, guess float64) (Limit, error) {
 	if err := f.checkTarget(t); err != nil {
 		return Limit{}, err
 	}
@@ -168,7 +180,7 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 			hi, spinodal, next = T, true, math.NaN()
 		default:
 			if T >= hi || T <= lo { // rounding at the ends of the range
-				return Limit{}, f.noLimit(P, t, T, T, false)
+				return Limit{}, f.noLimit(P, t, T, T, T, false)
 			}
 			return Limit{}, f.explain(c, T, P)
 		}
@@ -180,18 +192,18 @@ func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) 
 				case fine:
 					if ψ, _ := f.psi(&p, t, false); ψ < 0 {
 						if f.hopeless(&p, t, ψ) {
-							return Limit{}, f.noLimit(P, t, end, end, isSpinodal)
+							return Limit{}, f.noLimit(P, t, lo, end, end, isSpinodal)
 						}
 						// J peaks a little before the spinodal; the limit may lie before the peak.
-						top, ψ := f.peak(lo, end, P, t, false)
+						top, ψ := f.peak(lo, end, P, t, false, false)
 						if ψ < 0 {
-							return Limit{}, f.noLimit(P, t, end, top, isSpinodal)
+							return Limit{}, f.noLimit(P, t, lo, end, top, isSpinodal)
 						}
 						end = top
 					}
 					hi = math.Min(hi, end)
 				case noVapour: // not even superheated there
-					return Limit{}, f.noLimit(P, t, end, end, isSpinodal)
+					return Limit{}, f.noLimit(P, t, end, end, end, isSpinodal)
 				}
 				spinodal = true
 			}
@@ -237,8 +249,8 @@ func (f *Fluid) hopeless(p *point, t Target, ψ float64) bool {
 // so that ψ has a maximum just before it. The search halves the logarithm of the distance
 // on the sign of the slope, and ends where ψ is not below zero, or where the tangent to
 // the concave ψ stays below zero up to the closest state with a falling ψ. It returns the
-// state with the largest ψ met.
-func (f *Fluid) peak(inside, spinodal, given float64, t Target, atT bool) (x, ψ float64) {
+// state with the largest ψ met; to the end, that is where ψ is largest.
+func (f *Fluid) peak(inside, spinodal, given float64, t Target, atT, toEnd bool) (x, ψ float64) {
 	sign := 1.0
 	if spinodal < inside {
 		sign = -1
@@ -270,7 +282,7 @@ func (f *Fluid) peak(inside, spinodal, given float64, t Target, atT bool) (x, ψ
 		}
 		if sign*slope > 0 {
 			far = d
-			if v+sign*slope*(distance-falling) < 0 {
+			if !toEnd && v+sign*slope*(distance-falling) < 0 {
 				return x, ψ
 			}
 		} else {
@@ -315,10 +327,10 @@ func (f *Fluid) hottest(P float64) (T float64, spinodal bool) {
 	return T * (1 - 1e-11), spinodal
 }
 
-// noLimit is the error of a flux that does not reach the target up to end; top is
-// where it comes closest.
-func (f *Fluid) noLimit(P float64, t Target, end, top float64, spinodal bool) error {
-	e := &NoLimitError{Fluid: f.name, Given: P, Threshold: t.LnJ / math.Ln10, End: end, Spinodal: spinodal}
+// noLimit is the error of a flux that does not reach the target from inside up to end; top
+// is where it comes closest.
+func (f *Fluid) noLimit(P float64, t Target, inside, end, top float64, spinodal bool) error {
+	e := &NoLimitError{Fluid: f.name, Given: P, Threshold: t.LnJ / math.Ln10, End: end, Spinodal: spinodal, inside: inside}
 	var p point
 	if f.evaluate(top, P, &p) == fine && p.excess > 0 {
 		e.Reached, e.Known, e.Threshold = p.lnJ()/math.Ln10, true, f.wanted(&p, t)/math.Ln10

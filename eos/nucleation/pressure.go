@@ -80,7 +80,7 @@ func (f *Fluid) KineticPressure(T float64, t Target, guess float64) (Limit, erro
 				if f.evaluate(T, end, &p) == fine {
 					ψ, _ := f.psi(&p, t, true)
 					if ψ < 0 && !f.hopeless(&p, t, ψ) {
-						end, ψ = f.peak(hi, end, T, t, true)
+						end, ψ = f.peak(hi, end, T, t, true, false)
 						if ψ >= 0 {
 							lo = end
 						}
