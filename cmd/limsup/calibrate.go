@@ -24,8 +24,7 @@ func calibrateCommand() *cli.Command {
 		Description: "Prints the parameters with their uncertainties, the residuals, a cross-validation against the untuned model on the same folds with a verdict, and what tuning did to the rest of the equation. --out writes the calibrated model, which every command reads with --model. On several machines, --share divides a --bootstrap (see limsup gather and limsup share).\n\n" +
 			"Examples: limsup calibrate --data drops.csv --out lab.json\n" +
 			"          limsup calibrate --data drops.csv --tune threshold --tune slope/fluid --anchor vapour-pressure=1%",
-		Flags: flags([]cli.Flag{dataFlag()}, tuneFlags(), intervalFlags(), []cli.Flag{
-			&cli.StringFlag{Name: "folds", Usage: "what cross-validation leaves out at a time: `KIND` rows, fluid, method, batch, pressure, a number of parts, or none (default: fluid, or rows with one fluid)"},
+		Flags: flags([]cli.Flag{dataFlag()}, tuneFlags(), intervalFlags(), []cli.Flag{foldsFlag(),
 			&cli.BoolFlag{Name: "rows", Usage: "print the residual of every row"},
 		}, variantFlags(), []cli.Flag{formatFlag(), seedFlag(), shareFlag(), outFlag("the model, or the part of a share,")}),
 		Action: func(c *cli.Context) error {

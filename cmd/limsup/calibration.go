@@ -26,26 +26,8 @@ func calibrate(set *measure.Set, lib *fluid.Library, plan fit.Plan, folds string
 	if r.effects, err = c.Model().SideEffects(c.Queries()); err != nil {
 		return nil, err
 	}
-	explicit := folds != ""
-	if !explicit {
-		folds = validate.DefaultFolds(d.Observations)
-	}
-	if folds == "none" {
-		r.noCV = "cross-validation was not asked for"
-		return r, nil
-	}
-	f, err := validate.NewFolds(folds, d.Observations, plan.Seed)
-	if err == nil {
-		r.cv, err = validate.CrossValidateTelling(d, plan, f, c, progress)
-	}
-	if err != nil {
-		// A fold that leaves too little behind is no fault of the calibration.
-		var few *fit.TooFewError
-		var option *fit.OptionError
-		if explicit || !errors.As(err, &few) && !errors.As(err, &option) {
-			return nil, err
-		}
-		r.noCV = "no cross-validation: " + err.Error()
+	if r.cv, r.noCV, err = crossValidation(d, plan, folds, c, progress); err != nil {
+		return nil, err
 	}
 	return r, nil
 }

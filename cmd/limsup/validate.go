@@ -99,14 +99,15 @@ func newValidation(c *cli.Context, progress func(done, total int)) (*validation,
 }
 
 // crossValidation uses the folds asked for, or the usual ones as far as the data allow:
-// without folds given, data that cannot be divided are no error, and reason says so.
+// without folds given, data that cannot be divided are no error: a fold that leaves too
+// little behind is no fault of the calibration, and reason says so.
 func crossValidation(d *fit.Data, plan fit.Plan, folds string, c *fit.Calibration, progress func(done, total int)) (cv *validate.CrossValidation, reason string, err error) {
 	explicit := folds != ""
 	if !explicit {
 		folds = validate.DefaultFolds(d.Observations)
 	}
 	if folds == noFolds {
-		return nil, "it was not asked for", nil
+		return nil, "no cross-validation: it was not asked for", nil
 	}
 	f, err := validate.NewFolds(folds, d.Observations, plan.Seed)
 	if err == nil {
