@@ -89,6 +89,9 @@ func TestWarnings(t *testing.T) {
 				}
 			}), plan(t, "threshold")},
 			scene{states(t, truth, several, two, []float64{0}, 0.2), plan(t, "threshold")}},
+		{"on a kink at the spinodal", []string{"the search ended on a kink: the limits of", "n-hexane", "an offset by method"},
+			scene{read(t, library(t), "../data/demo/droplets.csv"), plan(t, "prefactor", "slope")},
+			scene{read(t, library(t), "../data/demo/droplets.csv"), plan(t, "prefactor", "slope", "offset/method")}},
 		{"surface tension beyond its range", []string{"the surface tension fit is used above the range that its source states for cyclohexane"},
 			scene{states(t, truth, []string{"cyclohexane"}, two, []float64{0}, 0.2), plan(t, "threshold")},
 			scene{states(t, truth, []string{"n-pentane"}, two, []float64{0}, 0.2), plan(t, "threshold")}},
