@@ -291,6 +291,9 @@ func (m *Model) Predict(q Query) (Prediction, error) {
 			out.Warnings = append(out.Warnings, fmt.Sprintf("the surface tension fit of %s is stated for %.5g K to %.5g K and used beyond", r.Key, lo, hi))
 		}
 	}
+	if l.held {
+		out.Warnings = append(out.Warnings, nucleation.HeldNote)
+	}
 	m.compareRange(&out, &q, &found)
 	out.doubt(q.Record)
 	return out, nil

@@ -1,9 +1,11 @@
 package fit
 
 import (
+	"cmp"
 	"errors"
 	"fmt"
 	"math"
+	"slices"
 
 	"limsup/data/fluid"
 	"limsup/data/measure"
@@ -139,7 +141,19 @@ func Prepare(set *measure.Set, lib *fluid.Library, p Plan) (*Data, error) {
 		o.Start = l.T
 		d.Observations = append(d.Observations, o)
 	}
+	d.sortExcluded()
 	return d, nil
+}
+
+// sortExcluded brings exclusions of the reader and of Prepare into the order of files and lines.
+func (d *Data) sortExcluded() {
+	order := map[string]int{}
+	for i, f := range d.Files {
+		order[f.Name] = i
+	}
+	slices.SortStableFunc(d.Excluded, func(a, b measure.Exclusion) int {
+		return cmp.Or(cmp.Compare(order[a.File], order[b.File]), cmp.Compare(a.Line, b.Line))
+	})
 }
 
 // rowReason tells whether an error is a property of the row (its fluid, its
@@ -257,6 +271,7 @@ type limitValue struct {
 	dTdP      float64            // K/Pa
 	steepness float64            // dlnJ/dT, 1/K; 0 for the spinodal
 	lnJ       float64
+	held      bool // see nucleation.Flux
 	// atSpinodal is set where the flux does not reach the target and the spinodal
 	// stands in; lnJ and steepness are then 0.
 	atSpinodal bool
@@ -284,7 +299,7 @@ func (ph *Physics) find(P float64, t nucleation.Target, own bool, guess float64,
 	if err != nil {
 		return l, err
 	}
-	l.T, l.dTdP, l.steepness, l.lnJ = k.T, k.DGiven, k.DT, k.LnJ
+	l.T, l.dTdP, l.steepness, l.lnJ, l.held = k.T, k.DGiven, k.DT, k.LnJ, k.Held
 	if !own {
 		l.d[locThresh] = k.DThreshold
 	}

@@ -159,8 +159,9 @@ func checkProduct(d *fit.Data) *product {
 	j := checkJSON{RowsUsed: len(d.Observations), RowsExcluded: excludedList(d.Excluded), Warnings: []string{}, Groups: checkGroups(d.Observations)}
 	var files []string
 	for _, f := range d.Files {
-		j.Files = append(j.Files, fileJSON{f.Name, f.SHA256, f.Rows, append([]string{}, f.IgnoredColumns...)})
-		s := fmt.Sprintf("%s: %d rows", f.Name, f.Rows)
+		n := rowsOf(d, f.Name)
+		j.Files = append(j.Files, fileJSON{f.Name, f.SHA256, n, append([]string{}, f.IgnoredColumns...)})
+		s := fmt.Sprintf("%s: %d rows", f.Name, n)
 		if len(f.IgnoredColumns) > 0 {
 			s += "; columns kept but not used: " + strings.Join(f.IgnoredColumns, ", ")
 		}
@@ -204,6 +205,22 @@ func checkProduct(d *fit.Data) *product {
 		blocks = append(blocks, block{text: "Warning: " + w.String()})
 	}
 	return &product{json: func() any { return j }, csv: full, blocks: blocks}
+}
+
+// rowsOf counts the rows of a file, used and excluded.
+func rowsOf(d *fit.Data, name string) int {
+	n := 0
+	for i := range d.Observations {
+		if d.Observations[i].File == name {
+			n++
+		}
+	}
+	for _, e := range d.Excluded {
+		if e.File == name {
+			n++
+		}
+	}
+	return n
 }
 
 // checkGroups summarises the observations by fluid and method, in order of names.

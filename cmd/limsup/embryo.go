@@ -9,6 +9,7 @@ import (
 	"limsup/cmd/limsup/internal/table"
 	"limsup/data/quantity"
 	"limsup/eos/nucleation"
+	"limsup/fit"
 )
 
 func embryoCommand() *cli.Command {
@@ -50,7 +51,7 @@ func embryoCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			return show(c, embryoProduct(r.Key, &e, n))
+			return show(c, embryoProduct(r.Key, &ph.Variant, &e, n))
 		},
 	}
 }
@@ -71,6 +72,7 @@ type embryoJSON struct {
 	Molecules      float64         `json:"molecules"`
 	Excess         float64         `json:"excess_molecules"`
 	Log10Flux      float64         `json:"log10_flux"`
+	Notes          []string        `json:"notes,omitempty"`
 	Curve          []curveJSON     `json:"curve"`
 }
 
@@ -79,16 +81,22 @@ type curveJSON struct {
 	FreeEnergy float64 `json:"free_energy_J"`
 }
 
-func embryoProduct(fluid string, e *nucleation.Embryo, n int) *product {
+func embryoProduct(fluid string, v *fit.Variant, e *nucleation.Embryo, n int) *product {
 	j := embryoJSON{Fluid: fluid, Temperature: e.T, Pressure: e.P, Kind: e.Kind, Saturation: e.Saturation,
 		EmbryoPressure: e.Pressure, Approximate: e.Approximate, Tension: e.TensionFlat, EmbryoTension: e.Tension,
 		Radius: e.Radius, Barrier: e.Barrier, BarrierOverKT: e.BarrierOverKT, Molecules: e.Molecules, Excess: e.Excess, Log10Flux: e.LnJ / math.Ln10}
-	form, inside := "Poynting", "vapour"
+	form, inside, around := "Poynting", "vapour", ""
 	if e.Kind == nucleation.Droplet {
-		form, inside = "Kelvin", "liquid"
+		form, inside, around = "Kelvin", "liquid", ", in supersaturated vapour"
+		if v.Kinetics != nucleation.Mechanical || v.EmbryoPressure == nucleation.Poynting {
+			j.Notes = append(j.Notes, "the options kinetics and embryo-pressure are of bubbles and do not act on a droplet")
+		}
+	}
+	if e.Held {
+		j.Notes = append(j.Notes, nucleation.HeldNote)
 	}
 	facts := table.Facts{
-		{Label: "embryo", Value: fmt.Sprintf("critical %s of %s", e.Kind, fluid)},
+		{Label: "embryo", Value: fmt.Sprintf("critical %s of %s%s", e.Kind, fluid, around)},
 		fact("temperature", e.T, 6, "K"),
 		fact("pressure", e.P/1e3, 6, "kPa"),
 		fact("saturation pressure", e.Saturation/1e3, 6, "kPa"),
@@ -102,8 +110,8 @@ func embryoProduct(fluid string, e *nucleation.Embryo, n int) *product {
 		fact("excess molecules", e.Excess, 4, ""),
 		fact("log10 J", e.LnJ/math.Ln10, 6, "(J in m-3.s-1)"),
 	}
-	if e.Held {
-		facts = append(facts, table.Fact{Label: "note", Value: "the kinetic factor is held at its floor under this tension"})
+	for _, n := range j.Notes {
+		facts = append(facts, table.Fact{Label: "note", Value: n})
 	}
 	t := &table.Table{
 		Title: "Free energy of formation",

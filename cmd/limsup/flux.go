@@ -8,6 +8,7 @@ import (
 
 	"limsup/cmd/limsup/internal/table"
 	"limsup/data/quantity"
+	"limsup/eos/nucleation"
 	"limsup/fit"
 )
 
@@ -92,6 +93,7 @@ type fluxJSON struct {
 	Pressure float64         `json:"pressure_Pa"`
 	Points   []fluxPointJSON `json:"points"`
 	Limit    *float64        `json:"limit_K"`
+	Notes    []string        `json:"notes,omitempty"`
 	NoLimit  string          `json:"no_limit,omitempty"`
 }
 
@@ -119,7 +121,12 @@ func fluxProduct(ph *fit.Physics, P float64, ts []float64) (*product, error) {
 			return nil, err
 		}
 		j.Points = append(j.Points, fluxPointJSON{T, x.Log10J(), x.DT / math.Ln10, x.Barrier})
-		t.Rows = append(t.Rows, []table.Cell{table.Num(T), table.Num(x.Log10J()), table.Num(x.DT / math.Ln10), table.Num(x.Barrier)})
+		lg := table.Num(x.Log10J())
+		if x.Held {
+			lg = lg.Note(nucleation.HeldNote)
+			j.Notes = []string{nucleation.HeldNote}
+		}
+		t.Rows = append(t.Rows, []table.Cell{table.Num(T), lg, table.Num(x.DT / math.Ln10), table.Num(x.Barrier)})
 	}
 	text := ""
 	if l, err := ph.Limit(P); err == nil {

@@ -260,11 +260,18 @@ func predictedRow(m *fit.Model, q *fit.Query, x *fit.Prediction) []table.Cell {
 		}
 		row = append(row, u, low, high)
 	}
-	cell := func(v float64, ok bool) table.Cell {
+	cell := func(v float64, ok bool, why string) table.Cell {
 		if !ok || math.IsNaN(v) {
-			return table.Missing("does not exist at this pressure")
+			return table.Missing(why)
 		}
 		return table.Num(v)
 	}
-	return append(row, cell(x.Log10Flux, x.HasFlux), cell(x.SpinodalT, x.HasSpinodal), cell(x.SaturationT, x.HasSaturation))
+	const absent = "does not exist at this pressure"
+	saturation := absent
+	if x.Pressure > 0 && x.Pressure < q.Record.CriticalPressure.Value {
+		if saturation = "colder than the equation is used"; m.Variant.Properties == nucleation.FromCorrelation {
+			saturation = "outside the vapour pressure correlation"
+		}
+	}
+	return append(row, cell(x.Log10Flux, x.HasFlux, "a spinodal has no flux"), cell(x.SpinodalT, x.HasSpinodal, absent), cell(x.SaturationT, x.HasSaturation, saturation))
 }

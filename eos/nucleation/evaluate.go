@@ -54,6 +54,9 @@ const maxPressure = 1e15
 // behind B ends. At this floor the flux is half a decade above that of B = 1.
 const minimumB = 0.1
 
+// HeldNote says what Held means.
+const HeldNote = "under this tension the kinetic factor of the flux is held at its floor, where it is worth half a decade"
+
 // point is one evaluated state.
 type point struct {
 	T, P      float64
