@@ -7,6 +7,7 @@ import (
 	"slices"
 	"strings"
 
+	"limsup/data/problem"
 	"limsup/data/quantity"
 	"limsup/eos/tension"
 )
@@ -20,7 +21,7 @@ func (r *reader) record(path string, v any) *Record {
 	}
 	rec := &Record{Key: f.required("key"), Name: f.text("name"), CAS: f.text("cas"), Formula: f.text("formula"), Hazard: f.text("hazard"), Note: f.text("note")}
 	if rec.Key != "" && normal(rec.Key) == "" {
-		r.problem(join(path, "key"), "%s has no letter or digit", quoted(rec.Key))
+		r.problem(join(path, "key"), "%s has no letter or digit", problem.Quoted(rec.Key))
 	}
 	if rec.Name == "" {
 		rec.Name = rec.Key
@@ -32,7 +33,7 @@ func (r *reader) record(path string, v any) *Record {
 		}
 	}
 	if c := rec.CAS; c != "" && !validCAS(c) {
-		r.problem(join(path, "cas"), "%s is not a CAS registry number: its check digit or its form is wrong", quoted(c))
+		r.problem(join(path, "cas"), "%s is not a CAS registry number: its check digit or its form is wrong", problem.Quoted(c))
 	}
 	rec.MolarMass = f.value("molar_mass", positive, quantity.MolarMass)
 	rec.CriticalTemperature = f.value("critical_temperature", positive, quantity.Temperature)
@@ -194,7 +195,7 @@ func (f *fields) form(known ...string) string {
 	if s == "" || slices.Contains(known, s) {
 		return s
 	}
-	f.r.problem(join(f.path, "form"), "unknown form %s, want %s", quoted(s), strings.Join(known, " or "))
+	f.r.problem(join(f.path, "form"), "unknown form %s, want %s", problem.Quoted(s), strings.Join(known, " or "))
 	return ""
 }
 

@@ -3,6 +3,8 @@ package fluid
 import (
 	"fmt"
 	"strings"
+
+	"limsup/data/problem"
 )
 
 // MissingError reports that a record does not hold a property.
@@ -32,9 +34,9 @@ type UnknownError struct {
 
 func (e *UnknownError) Error() string {
 	if len(e.Suggestions) == 0 {
-		return fmt.Sprintf("fluid %s: unknown", quoted(e.Name))
+		return fmt.Sprintf("fluid %s: unknown", problem.Quoted(e.Name))
 	}
-	return fmt.Sprintf("fluid %s: unknown; did you mean %s?", quoted(e.Name), strings.Join(e.Suggestions, " or "))
+	return fmt.Sprintf("fluid %s: unknown; did you mean %s?", problem.Quoted(e.Name), strings.Join(e.Suggestions, " or "))
 }
 
 // Problem is one place of a file of fluids that cannot be used as it stands.
@@ -69,35 +71,8 @@ func (p *Problem) Unwrap() error { return p.Err }
 // Problems are all the problems of one file, in the order of its lines.
 type Problems []*Problem
 
-// printed is how many problems Problems.Error spells out.
-const printed = 20
-
-// Error returns one line per problem, at most 20, then how many more there are.
-func (ps Problems) Error() string {
-	var lines []string
-	for i, p := range ps {
-		if i == printed {
-			lines = append(lines, fmt.Sprintf("and %d more", len(ps)-printed))
-			break
-		}
-		lines = append(lines, p.Error())
-	}
-	return strings.Join(lines, "\n")
-}
+// Error returns one line per problem, at most problem.Most, then how many more there are.
+func (ps Problems) Error() string { return problem.Text(ps) }
 
 // Unwrap returns the problems one by one, for errors.As.
-func (ps Problems) Unwrap() []error {
-	out := make([]error, len(ps))
-	for i, p := range ps {
-		out[i] = p
-	}
-	return out
-}
-
-// quoted quotes a text for an error, cut to 40 characters.
-func quoted(s string) string {
-	if r := []rune(s); len(r) > 40 {
-		return fmt.Sprintf("%q...", string(r[:40]))
-	}
-	return fmt.Sprintf("%q", s)
-}
+func (ps Problems) Unwrap() []error { return problem.Errors(ps) }

@@ -10,6 +10,8 @@ import (
 	"strings"
 
 	"github.com/pelletier/go-toml/v2"
+
+	"limsup/data/problem"
 )
 
 // Parse reads a TOML file of records, [[fluid]] tables with the keys of the built-in
@@ -71,7 +73,7 @@ func (r *reader) document(doc map[string]any) []*Record {
 			continue
 		}
 		if key := normal(rec.Key); first[key] != "" {
-			r.problem(join(p, "key"), "%s is already the key of a record of this file", quoted(rec.Key))
+			r.problem(join(p, "key"), "%s is already the key of a record of this file", problem.Quoted(rec.Key))
 		} else {
 			first[key] = p
 		}
@@ -92,7 +94,7 @@ func split(doc map[string]any, path string) (key, field string) {
 		}
 	}
 	if key != "" {
-		key = strings.Trim(quoted(key), `"`)
+		key = strings.Trim(problem.Quoted(key), `"`)
 	}
 	_, field, _ = strings.Cut(path, "].")
 	return key, field

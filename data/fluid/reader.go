@@ -7,6 +7,7 @@ import (
 	"slices"
 	"strings"
 
+	"limsup/data/problem"
 	"limsup/data/quantity"
 )
 
@@ -53,7 +54,7 @@ func kindOf(v any) string {
 	case nil:
 		return "nothing"
 	case string:
-		return "text " + quoted(v)
+		return "text " + problem.Quoted(v)
 	case bool:
 		return "a truth value"
 	case int64, float64:
@@ -80,7 +81,7 @@ func (f *fields) close() {
 		if f.seen[k] {
 			continue
 		}
-		text := fmt.Sprintf("unknown key %s", quoted(k))
+		text := fmt.Sprintf("unknown key %s", problem.Quoted(k))
 		near := quantity.Near(k, known)
 		if len(near) == 0 {
 			near = slices.DeleteFunc(slices.Clone(known), func(s string) bool { return k == "" || !strings.HasPrefix(s, k) })
@@ -108,7 +109,7 @@ func (r *reader) asText(path string, v any) string {
 		return ""
 	}
 	if i := strings.IndexFunc(s, func(c rune) bool { return c < ' ' || c == 0x7f || c == '\uFFFD' }); i >= 0 {
-		r.problem(path, "text %s holds a control character", quoted(s))
+		r.problem(path, "text %s holds a control character", problem.Quoted(s))
 		return ""
 	}
 	return s

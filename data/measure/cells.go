@@ -11,6 +11,7 @@ import (
 
 	"github.com/xuri/excelize/v2"
 
+	"limsup/data/problem"
 	"limsup/data/quantity"
 )
 
@@ -148,7 +149,7 @@ func unreadable(part string, err error) error {
 	if e, ok := err.(*packageError); ok {
 		return e
 	}
-	return &packageError{"part " + quoted(part) + " cannot be read: " + err.Error(), aWorkbook, err}
+	return &packageError{"part " + problem.Quoted(part) + " cannot be read: " + err.Error(), aWorkbook, err}
 }
 
 // richText gathers the text of an si or is element: its t elements, but not the phonetic ones.
@@ -261,7 +262,7 @@ func (s *sheetReader) readRow(e *xml.StartElement) error {
 	if r := attribute(e, "r"); r != "" {
 		n, err := strconv.Atoi(r)
 		if err != nil || n < number || n > excelize.TotalRows {
-			return &packageError{fmt.Sprintf("row numbered %s after row %d", quoted(r), s.row.number), fmt.Sprintf("rows in ascending order, at most %d", excelize.TotalRows), nil}
+			return &packageError{fmt.Sprintf("row numbered %s after row %d", problem.Quoted(r), s.row.number), fmt.Sprintf("rows in ascending order, at most %d", excelize.TotalRows), nil}
 		}
 		number = n
 	}
@@ -308,7 +309,7 @@ func (s *sheetReader) place(e *xml.StartElement, column int) (int, error) {
 	}
 	c, row, err := excelize.CellNameToCoordinates(r)
 	if err != nil || row != s.row.number || c <= column {
-		return 0, &packageError{fmt.Sprintf("cell named %s in row %d", quoted(r), s.row.number), "cells in their row, in ascending order", nil}
+		return 0, &packageError{fmt.Sprintf("cell named %s in row %d", problem.Quoted(r), s.row.number), "cells in their row, in ascending order", nil}
 	}
 	return c, nil
 }
@@ -372,7 +373,7 @@ func (s *sheetReader) value(kind, style, v string) cell {
 	case "s":
 		i, err := strconv.Atoi(strings.TrimSpace(v))
 		if err != nil || i < 0 || i >= len(s.texts) {
-			return broken("text number %s does not exist", quoted(v))
+			return broken("text number %s does not exist", problem.Quoted(v))
 		}
 		return cell{text: s.texts[i]}
 	case "str":
@@ -390,7 +391,7 @@ func (s *sheetReader) value(kind, style, v string) cell {
 		}
 		x, err := quantity.ParseNumber(v)
 		if err != nil {
-			return broken("number cell holds %s", quoted(v))
+			return broken("number cell holds %s", problem.Quoted(v))
 		}
 		k := numberCell
 		if i, err := strconv.Atoi(style); err == nil && s.book.dates[i] {
@@ -398,5 +399,5 @@ func (s *sheetReader) value(kind, style, v string) cell {
 		}
 		return cell{kind: k, text: strconv.FormatFloat(x, 'g', -1, 64)}
 	}
-	return broken("cell of unknown type %s", quoted(kind))
+	return broken("cell of unknown type %s", problem.Quoted(kind))
 }

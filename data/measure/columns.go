@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"strings"
 
+	"limsup/data/problem"
 	"limsup/data/quantity"
 )
 
@@ -92,7 +93,7 @@ func (a *assembler) header(fields []string, at func(int) position) {
 			id = name
 		}
 		if j, twice := first[id]; twice && id != "" {
-			a.fail(at(i), h, fmt.Sprintf("column %s given twice, first as %s in field %d", id, quoted(strings.TrimSpace(fields[j])), j+1), "each column once", nil)
+			a.fail(at(i), h, fmt.Sprintf("column %s given twice, first as %s in field %d", id, problem.Quoted(strings.TrimSpace(fields[j])), j+1), "each column once", nil)
 			continue
 		}
 		first[id] = i
@@ -149,9 +150,9 @@ func (a *assembler) missing(known []column, fields []string, ignored []int, at f
 			if !resembles(h, k.name) {
 				continue
 			}
-			near = append(near, quoted(h))
+			near = append(near, problem.Quoted(h))
 			a.doubts.add("ignored "+k.name, Warning{File: a.info.Name, Line: at(i).line, Where: at(i).where,
-				Text: fmt.Sprintf("column %s is ignored; was %s meant?", quoted(h), k.header)})
+				Text: fmt.Sprintf("column %s is ignored; was %s meant?", problem.Quoted(h), k.header)})
 		}
 		if c < required {
 			found := "column " + k.name + " is missing"

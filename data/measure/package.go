@@ -11,6 +11,8 @@ import (
 	"strings"
 
 	"github.com/xuri/excelize/v2"
+
+	"limsup/data/problem"
 )
 
 // This file opens the package of a workbook: a ZIP archive of XML parts that refer to each other by relations.
@@ -64,7 +66,7 @@ func openWorkbook(r io.ReaderAt, size int64, l limits) (*workbook, error) {
 	for _, f := range z.File {
 		name := strings.ToLower(strings.TrimPrefix(strings.ReplaceAll(f.Name, `\`, "/"), "/"))
 		if _, twice := b.parts[name]; twice {
-			return nil, &packageError{"the archive holds two parts called " + quoted(f.Name), "each part once", nil}
+			return nil, &packageError{"the archive holds two parts called " + problem.Quoted(f.Name), "each part once", nil}
 		}
 		b.parts[name] = f
 	}
@@ -116,10 +118,10 @@ func (b *workbook) relations(of string) ([]relation, error) {
 func (b *workbook) small(name string) ([]byte, error) {
 	f := b.parts[name]
 	if f == nil {
-		return nil, &packageError{"the archive has no part " + quoted(name), aWorkbook, nil}
+		return nil, &packageError{"the archive has no part " + problem.Quoted(name), aWorkbook, nil}
 	}
 	if f.UncompressedSize64 > uint64(b.limits.part) {
-		return nil, beyond(&LimitError{What: "part " + quoted(name), Limit: b.limits.part, Unit: "bytes"})
+		return nil, beyond(&LimitError{What: "part " + problem.Quoted(name), Limit: b.limits.part, Unit: "bytes"})
 	}
 	r, err := f.Open()
 	if err == nil {
@@ -129,7 +131,7 @@ func (b *workbook) small(name string) ([]byte, error) {
 			return text, nil
 		}
 	}
-	return nil, &packageError{"part " + quoted(name) + " cannot be read: " + err.Error(), aWorkbook, err}
+	return nil, &packageError{"part " + problem.Quoted(name) + " cannot be read: " + err.Error(), aWorkbook, err}
 }
 
 // describe finds sheets, shared texts and formats.
@@ -289,14 +291,14 @@ func dateFormat(code string) bool {
 func (b *workbook) open(part, what string, limit int64) (io.ReadCloser, error) {
 	f := b.parts[part]
 	if f == nil {
-		return nil, &packageError{"the archive has no part " + quoted(part), aWorkbook, nil}
+		return nil, &packageError{"the archive has no part " + problem.Quoted(part), aWorkbook, nil}
 	}
 	if f.UncompressedSize64 > uint64(limit) {
 		return nil, beyond(&LimitError{What: what, Limit: limit, Unit: "bytes"})
 	}
 	r, err := f.Open()
 	if err != nil {
-		return nil, &packageError{"part " + quoted(part) + " cannot be read: " + err.Error(), aWorkbook, err}
+		return nil, &packageError{"part " + problem.Quoted(part) + " cannot be read: " + err.Error(), aWorkbook, err}
 	}
 	return r, nil
 }

@@ -1,9 +1,10 @@
 package measure
 
 import (
-	"fmt"
 	"strings"
 	"unicode"
+
+	"limsup/data/problem"
 )
 
 // Problem is one place of a file that cannot be used as it stands.
@@ -38,43 +39,16 @@ func (p *Problem) Unwrap() error { return p.Err }
 // Problems are all the problems of one file, in the order of its lines.
 type Problems []*Problem
 
-// printed is how many problems Problems.Error spells out.
-const printed = 20
-
-// Error returns one line per problem, at most 20, then how many more there are.
-func (ps Problems) Error() string {
-	var lines []string
-	for i, p := range ps {
-		if i == printed {
-			lines = append(lines, fmt.Sprintf("and %d more", len(ps)-printed))
-			break
-		}
-		lines = append(lines, p.Error())
-	}
-	return strings.Join(lines, "\n")
-}
+// Error returns one line per problem, at most problem.Most, then how many more there are.
+func (ps Problems) Error() string { return problem.Text(ps) }
 
 // Unwrap returns the problems one by one, for errors.As.
-func (ps Problems) Unwrap() []error {
-	out := make([]error, len(ps))
-	for i, p := range ps {
-		out[i] = p
-	}
-	return out
-}
+func (ps Problems) Unwrap() []error { return problem.Errors(ps) }
 
 // printable returns s, quoted if it holds characters that could upset a terminal or a line.
 func printable(s string) string {
 	if strings.IndexFunc(s, func(r rune) bool { return !unicode.IsPrint(r) }) >= 0 {
-		return quoted(s)
+		return problem.Quoted(s)
 	}
 	return s
-}
-
-// quoted quotes a field for an error text, cut to 40 characters.
-func quoted(s string) string {
-	if r := []rune(s); len(r) > 40 {
-		return fmt.Sprintf("%q...", string(r[:40]))
-	}
-	return fmt.Sprintf("%q", s)
 }

@@ -5,6 +5,7 @@ import (
 	"math"
 	"strings"
 
+	"limsup/data/problem"
 	"limsup/data/quantity"
 )
 
@@ -74,7 +75,7 @@ func (a *assembler) choice(c int, text string, words []string, at func(int) posi
 			return i
 		}
 	}
-	a.fail(at(a.layout.field[c]), a.layout.header[c], quoted(text)+" unknown", strings.Join(words, " or "), nil)
+	a.fail(at(a.layout.field[c]), a.layout.header[c], problem.Quoted(text)+" unknown", strings.Join(words, " or "), nil)
 	return 0
 }
 
@@ -135,7 +136,7 @@ func (a *assembler) pressure(fields []string, at func(int) position) float64 {
 func (a *assembler) finite(c int, v float64, fields []string, at func(int) position) float64 {
 	if math.IsInf(v, 0) || v == 0 {
 		i := a.layout.field[c]
-		a.fail(at(i), a.layout.header[c], quoted(fields[i])+" is out of range in "+a.layout.unit[c].Dimension().SI(), "", nil)
+		a.fail(at(i), a.layout.header[c], problem.Quoted(fields[i])+" is out of range in "+a.layout.unit[c].Dimension().SI(), "", nil)
 		return 0
 	}
 	return v
@@ -153,7 +154,7 @@ func (a *assembler) positive(c int, fields []string, at func(int) position, zero
 		a.fail(at(i), a.layout.header[c], zero, expected, nil)
 		return 0, false
 	case v < 0:
-		a.fail(at(i), a.layout.header[c], quoted(fields[i])+" is negative", expected, nil)
+		a.fail(at(i), a.layout.header[c], problem.Quoted(fields[i])+" is negative", expected, nil)
 		return 0, false
 	}
 	v = a.finite(c, a.layout.unit[c].DifferenceToSI(v), fields, at)

@@ -10,6 +10,7 @@ import (
 
 	"github.com/xuri/excelize/v2"
 
+	"limsup/data/problem"
 	"limsup/data/quantity"
 )
 
@@ -84,7 +85,7 @@ func (b *workbook) choose(name string, texts []string) (*sheet, error) {
 	}
 	switch {
 	case name != "":
-		found := "there is no sheet " + quoted(name)
+		found := "there is no sheet " + problem.Quoted(name)
 		if near := quantity.Near(name, names); near != nil {
 			found += "; near: " + quotedList(near)
 		}
@@ -111,7 +112,7 @@ func quotedList(names []string) string {
 			q = append(q, fmt.Sprintf("%d more", len(names)-shown))
 			break
 		}
-		q = append(q, quoted(n))
+		q = append(q, problem.Quoted(n))
 	}
 	return strings.Join(q, ", ")
 }

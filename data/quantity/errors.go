@@ -3,6 +3,8 @@ package quantity
 import (
 	"fmt"
 	"strings"
+
+	"limsup/data/problem"
 )
 
 // Kind says what is wrong with a text that should have been a number, a unit or a quantity.
@@ -37,11 +39,11 @@ func (e *Error) Error() string {
 	var b strings.Builder
 	switch e.Kind {
 	case NotANumber, DecimalComma, NotFinite, OutOfRange:
-		fmt.Fprintf(&b, "number %s: ", clip(e.Found))
+		fmt.Fprintf(&b, "number %s: ", problem.Quoted(e.Found))
 	case NoUnit, BelowAbsoluteZero:
-		fmt.Fprintf(&b, "quantity %s: ", clip(e.Found))
+		fmt.Fprintf(&b, "quantity %s: ", problem.Quoted(e.Found))
 	default:
-		fmt.Fprintf(&b, "unit %s: ", clip(e.Found))
+		fmt.Fprintf(&b, "unit %s: ", problem.Quoted(e.Found))
 	}
 	b.WriteString(e.reason())
 	if e.Expected != "" {
@@ -65,12 +67,12 @@ func (e *Error) reason() string {
 		return "has no unit"
 	case Syntax:
 		if e.Symbol != "" {
-			return "cannot be read at " + clip(e.Symbol)
+			return "cannot be read at " + problem.Quoted(e.Symbol)
 		}
 		return "cannot be read"
 	case UnknownUnit:
 		if e.Symbol != "" && e.Symbol != e.Found {
-			return "unknown symbol " + clip(e.Symbol)
+			return "unknown symbol " + problem.Quoted(e.Symbol)
 		}
 		return "unknown"
 	case GaugePressure:
@@ -83,12 +85,4 @@ func (e *Error) reason() string {
 		return "is not above absolute zero"
 	}
 	return "not a decimal number"
-}
-
-// clip quotes s, cut to 40 characters so that a whole file pasted by mistake stays readable.
-func clip(s string) string {
-	if r := []rune(s); len(r) > 40 {
-		return fmt.Sprintf("%q...", string(r[:40]))
-	}
-	return fmt.Sprintf("%q", s)
 }

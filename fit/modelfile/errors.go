@@ -2,7 +2,8 @@ package modelfile
 
 import (
 	"fmt"
-	"strings"
+
+	"limsup/data/problem"
 )
 
 // InvalidError reports one place of a model file that cannot be used.
@@ -27,30 +28,11 @@ func (e *InvalidError) Unwrap() error { return e.Err }
 // Problems are all the problems of a model file.
 type Problems []*InvalidError
 
-// printed is how many problems Problems.Error spells out.
-const printed = 20
-
-// Error returns one line per problem, at most 20, then how many more there are.
-func (ps Problems) Error() string {
-	var lines []string
-	for i, p := range ps {
-		if i == printed {
-			lines = append(lines, fmt.Sprintf("and %d more", len(ps)-printed))
-			break
-		}
-		lines = append(lines, p.Error())
-	}
-	return strings.Join(lines, "\n")
-}
+// Error returns one line per problem, at most problem.Most, then how many more there are.
+func (ps Problems) Error() string { return problem.Text(ps) }
 
 // Unwrap returns the problems one by one, for errors.As.
-func (ps Problems) Unwrap() []error {
-	out := make([]error, len(ps))
-	for i, p := range ps {
-		out[i] = p
-	}
-	return out
-}
+func (ps Problems) Unwrap() []error { return problem.Errors(ps) }
 
 // err is nil where there are no problems.
 func (ps Problems) err() error {

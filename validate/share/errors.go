@@ -2,7 +2,8 @@ package share
 
 import (
 	"fmt"
-	"strings"
+
+	"limsup/data/problem"
 )
 
 // ShareError reports text that is no share.
@@ -63,20 +64,8 @@ func (e *MissingError) Error() string {
 // Problems are all that keeps parts from being joined.
 type Problems []error
 
-// shown is the number of problems written out.
-const shown = 20
-
-func (p Problems) Error() string {
-	var lines []string
-	for i, e := range p {
-		if i == shown {
-			lines = append(lines, fmt.Sprintf("and %d more", len(p)-shown))
-			break
-		}
-		lines = append(lines, e.Error())
-	}
-	return strings.Join(lines, "\n")
-}
+// Error returns one line per problem, at most problem.Most, then how many more there are.
+func (p Problems) Error() string { return problem.Text(p) }
 
 // Unwrap returns the problems.
 func (p Problems) Unwrap() []error { return p }

@@ -9,6 +9,8 @@ import (
 	"testing"
 
 	"pgregory.net/rapid"
+
+	"limsup/data/problem"
 )
 
 func TestParse(t *testing.T) {
@@ -218,7 +220,7 @@ func TestJoinRefuses(t *testing.T) {
 // TestManyProblems cuts a long list.
 func TestManyProblems(t *testing.T) {
 	_, err := Join(set(200)[:1], "")
-	if lines := strings.Split(err.Error(), "\n"); len(lines) != shown+1 || lines[shown] != "and 179 more" {
+	if lines := strings.Split(err.Error(), "\n"); len(lines) != problem.Most+1 || lines[problem.Most] != "and 179 more" {
 		t.Errorf("%d lines, the last %q", len(lines), lines[len(lines)-1])
 	}
 }

@@ -1,6 +1,10 @@
 package campaign
 
-import "fmt"
+import (
+	"fmt"
+
+	"limsup/data/problem"
+)
 
 // InputError reports a plan that cannot be made as it was asked for.
 type InputError struct {
@@ -31,26 +35,8 @@ func (e *FileError) Unwrap() error { return e.Err }
 // FileErrors are all the problems that were found in one file.
 type FileErrors []*FileError
 
-func (es FileErrors) Error() string {
-	const most = 20
-	text := ""
-	for i, e := range es {
-		if i == most {
-			return text + fmt.Sprintf("\nand %d more", len(es)-most)
-		}
-		if i > 0 {
-			text += "\n"
-		}
-		text += e.Error()
-	}
-	return text
-}
+// Error returns one line per problem, at most problem.Most, then how many more there are.
+func (es FileErrors) Error() string { return problem.Text(es) }
 
 // Unwrap returns the problems one by one.
-func (es FileErrors) Unwrap() []error {
-	out := make([]error, len(es))
-	for i, e := range es {
-		out[i] = e
-	}
-	return out
-}
+func (es FileErrors) Unwrap() []error { return problem.Errors(es) }
