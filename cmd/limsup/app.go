@@ -80,6 +80,9 @@ func onUsageError(c *cli.Context, err error, _ bool) error {
 				names = append(names, f.Names()...)
 			}
 		}
+		if hint := ofDivided(c, name); hint != "" {
+			return &usageError{hint}
+		}
 		return &usageError{fmt.Sprintf("%s has no flag --%s%s", commandName(c), shown(name), suggest("--", quantity.Near(name, names)))}
 	}
 	return &usageError{commandName(c) + ": " + text}

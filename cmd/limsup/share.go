@@ -58,6 +58,23 @@ func shareCommand() *cli.Command {
 	}
 }
 
+// ofDivided explains a flag that limsup share does not have, but a command that it
+// divides: the two hyphens are missing. Else it is empty.
+func ofDivided(c *cli.Context, name string) string {
+	if c.Command == nil || c.Command.Name != "share" {
+		return ""
+	}
+	has := func(k *cli.Command, flag string) bool {
+		return slices.ContainsFunc(k.Flags, func(f cli.Flag) bool { return slices.Contains(f.Names(), flag) })
+	}
+	for _, k := range newApp(io.Discard, io.Discard).Commands {
+		if has(k, "share") && has(k, name) {
+			return fmt.Sprintf("limsup share has no flag --%s: the command to divide stands after two hyphens, with its flags: limsup share --engine slurm -- COMMAND --%s ...", name, name)
+		}
+	}
+	return ""
+}
+
 // checkDivided refuses a command that cannot be computed in shares, or whose flags it
 // would refuse itself.
 func checkDivided(words []string) error {
