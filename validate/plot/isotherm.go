@@ -12,44 +12,24 @@ import (
 //
 // Errors: *EmptyError above the critical temperature; those of the physics.
 func Isotherm(in *Input, s State) (*Figure, error) {
-	s, err := in.complete(s)
+	f, m, iso, err := subcritical(in, s, "isotherm")
 	if err != nil {
 		return nil, err
 	}
-	ph, err := in.equation()
-	if err != nil {
-		return nil, err
-	}
-	m := &ph.Model
-	iso, err := m.Isotherm(s.T)
-	if err != nil {
-		return nil, err
-	}
-	f := &Figure{ID: "isotherm-" + slug(in.Record.Key), Kind: "isotherm",
-		Title:   fmt.Sprintf("Isotherm of %s at %s K", Visible(in.Record.Key), fixed(s.T, 2)),
-		Caption: "Volume grows from left to right, from liquid to vapour. Under the binodal the saturated phases coexist at the pressure of the level line. The dashed stretches of the isotherm, between binodal and spinodal, are metastable: superheated liquid on the left, supersaturated vapour on the right. The dotted stretch, where pressure rises with volume, cannot exist."}
-	if !iso.Subcritical {
-		return nil, &EmptyError{Figure: f.ID, About: in.Record.Key, Err: &eos.DomainError{Fluid: m.Fluid, Equation: m.Equation, Quantity: "binodal", Argument: "temperature", Value: s.T, Lo: m.MinT, Hi: m.Tc, Unit: "K"}}
-	}
+	f.Title = fmt.Sprintf("Isotherm of %s at %s K", Visible(in.Record.Key), fixed(iso.T, 2))
+	f.Caption = "Volume grows from left to right, from liquid to vapour. Under the binodal the saturated phases coexist at the pressure of the level line. The dashed stretches of the isotherm, between binodal and spinodal, are metastable: superheated liquid on the left, supersaturated vapour on the right. The dotted stretch, where pressure rises with volume, cannot exist."
 	top := 1.15 * m.Pc
 	bottom := math.Min(iso.Liquid.P, 0) - 0.02*m.Pc
-	first, err := m.Liquid(s.T, top)
+	first, err := m.Liquid(iso.T, top)
 	if err != nil {
 		return nil, err
 	}
 	last := 4 * iso.Saturation.Vv
 	sat := &iso.Saturation
 	p := Panel{X: Axis{Label: "v/(cm³/mol)", Log: true}, Y: Axis{Label: "P/MPa"}}
-	for _, part := range stretches(&iso, first, last) {
-		line := Series{Name: part.name, Style: part.style}
-		for _, v := range geometric(part.from, part.to, sweep) {
-			x, err := iso.At(v)
-			if err != nil {
-				return nil, err
-			}
-			line.X, line.Y = append(line.X, v*1e6), append(line.Y, x.P/mega)
-		}
-		p.Series = append(p.Series, line)
+	p.Series, err = lines(iso, first, last, func(x eos.Point) (float64, float64) { return x.V * 1e6, x.P / mega })
+	if err != nil {
+		return nil, err
 	}
 	bin := Series{Name: "binodal", Style: Style{Colour: First, Dash: LongDashed}}
 	spin := Series{Name: "spinodals", Style: Style{Colour: Third, Dash: DashDotted}}
@@ -97,6 +77,29 @@ func statePoint(name string, v, P float64) string {
 	return fmt.Sprintf("%s: %s cm³/mol, %s MPa", name, significant(v*1e6, 5), significant(P/mega, 5))
 }
 
+// subcritical begins a figure of a kind that shows an isotherm of a state, which must
+// lie below the critical temperature.
+func subcritical(in *Input, s State, kind string) (*Figure, *eos.Model, *eos.Isotherm, error) {
+	s, err := in.complete(s)
+	if err != nil {
+		return nil, nil, nil, err
+	}
+	ph, err := in.equation()
+	if err != nil {
+		return nil, nil, nil, err
+	}
+	m := &ph.Model
+	iso, err := m.Isotherm(s.T)
+	if err != nil {
+		return nil, nil, nil, err
+	}
+	f := &Figure{ID: kind + "-" + slug(in.Record.Key), Kind: kind}
+	if !iso.Subcritical {
+		return nil, nil, nil, &EmptyError{Figure: f.ID, About: in.Record.Key, Err: &eos.DomainError{Fluid: m.Fluid, Equation: m.Equation, Quantity: "binodal", Argument: "temperature", Value: s.T, Lo: m.MinT, Hi: m.Tc, Unit: "K"}}
+	}
+	return f, m, &iso, nil
+}
+
 // stretch is a part of an isotherm of one kind of state.
 type stretch struct {
 	name     string
@@ -117,51 +120,49 @@ func stretches(iso *eos.Isotherm, first, last float64) []stretch {
 	}
 }
 
+// lines draw the stretches of an isotherm by the coordinates at of a state.
+func lines(iso *eos.Isotherm, first, last float64, at func(eos.Point) (x, y float64)) ([]Series, error) {
+	var out []Series
+	for _, part := range stretches(iso, first, last) {
+		line := Series{Name: part.name, Style: part.style}
+		for _, v := range geometric(part.from, part.to, sweep) {
+			s, err := iso.At(v)
+			if err != nil {
+				return nil, err
+			}
+			x, y := at(s)
+			line.X, line.Y = append(line.X, x), append(line.Y, y)
+		}
+		out = append(out, line)
+	}
+	return out, nil
+}
+
 // Potential shows the chemical potential against pressure along an isotherm.
 //
 // Errors: as Isotherm.
 func Potential(in *Input, s State) (*Figure, error) {
-	s, err := in.complete(s)
+	f, m, iso, err := subcritical(in, s, "potential")
 	if err != nil {
 		return nil, err
 	}
-	ph, err := in.equation()
-	if err != nil {
-		return nil, err
-	}
-	m := &ph.Model
-	iso, err := m.Isotherm(s.T)
-	if err != nil {
-		return nil, err
-	}
-	f := &Figure{ID: "potential-" + slug(in.Record.Key), Kind: "potential",
-		Title:   fmt.Sprintf("Chemical potential of %s at %s K", Visible(in.Record.Key), fixed(s.T, 2)),
-		Caption: "Of two phases at one pressure the one with the lower chemical potential is stable. The branches of liquid and vapour cross at saturation, the zero of the scale. Beyond the crossing each goes on as a metastable phase (dashed) up to its cusp, the spinodal; the arc between the cusps is unstable."}
-	if !iso.Subcritical {
-		return nil, &EmptyError{Figure: f.ID, About: in.Record.Key, Err: &eos.DomainError{Fluid: m.Fluid, Equation: m.Equation, Quantity: "binodal", Argument: "temperature", Value: s.T, Lo: m.MinT, Hi: m.Tc, Unit: "K"}}
-	}
+	f.Title = fmt.Sprintf("Chemical potential of %s at %s K", Visible(in.Record.Key), fixed(iso.T, 2))
+	f.Caption = "Of two phases at one pressure the one with the lower chemical potential is stable. The branches of liquid and vapour cross at saturation, the zero of the scale. Beyond the crossing each goes on as a metastable phase (dashed) up to its cusp, the spinodal; the arc between the cusps is unstable."
 	sat := &iso.Saturation
 	// As much of the stable branches as the metastable ones extend.
 	span := math.Max(iso.Vapour.P-sat.P, math.Min(sat.P-iso.Liquid.P, sat.P))
-	first, err := m.Liquid(s.T, sat.P+0.6*span)
+	first, err := m.Liquid(iso.T, sat.P+0.6*span)
 	if err != nil {
 		return nil, err
 	}
-	last, err := m.Vapour(s.T, math.Max(0.55*sat.P, sat.P-0.6*span))
+	last, err := m.Vapour(iso.T, math.Max(0.55*sat.P, sat.P-0.6*span))
 	if err != nil {
 		return nil, err
 	}
 	p := Panel{X: Axis{Label: "P/MPa"}, Y: Axis{Label: "(μ − μ(saturation))/(J/mol)"}}
-	for _, part := range stretches(&iso, first, last) {
-		line := Series{Name: part.name, Style: part.style}
-		for _, v := range geometric(part.from, part.to, sweep) {
-			x, err := iso.At(v)
-			if err != nil {
-				return nil, err
-			}
-			line.X, line.Y = append(line.X, x.P/mega), append(line.Y, x.Mu)
-		}
-		p.Series = append(p.Series, line)
+	p.Series, err = lines(iso, first, last, func(x eos.Point) (float64, float64) { return x.P / mega, x.Mu })
+	if err != nil {
+		return nil, err
 	}
 	cusps := Series{Name: "limits of stability", Shape: Points, Style: Style{Colour: Third, Marker: Diamond}}
 	for i, x := range []eos.SpinodalState{iso.Liquid, iso.Vapour} {
