@@ -264,11 +264,37 @@ func TestPeak(t *testing.T) {
 			}
 		}
 	}
-	for _, above := range []float64{1e-3, 1, 20} { // the last one is hopeless at first sight
-		over, err := f.KineticLimit(atmosphere, Target{LnJ: peak + above}, 0)
-		var no *NoLimitError
-		if !errors.As(err, &no) || math.Abs(no.Reached*math.Ln10-peak) > 1e-3 {
-			t.Errorf("%g above the peak: %g K, %v; want none, with ln J reaching %g", above, over.T, err, peak)
+	over, err := f.KineticLimit(atmosphere, Target{LnJ: peak + 1e-3}, 0)
+	var no *NoLimitError
+	if !errors.As(err, &no) || math.Abs(no.Reached*math.Ln10-peak) > 1e-3 {
+		t.Errorf("above the peak: %g K, %v; want none, with ln J reaching %g", over.T, err, peak)
+	}
+}
+
+// TestReached: the error of a target that is not met tells the largest flux before the
+// spinodal, however far the target and wherever the search began.
+func TestReached(t *testing.T) {
+	f := untuned(t, "redlich-kwong", named(t, "n-octane"), Config{})
+	m := f.Config().Model
+	s, err := m.LiquidSpinodalTemperature(atmosphere)
+	if err != nil {
+		t.Fatal(err)
+	}
+	peak := math.Inf(-1)
+	for d := -11.0; d < -1; d += 0.05 {
+		if x, err := f.Flux(s.T*(1-math.Pow(10, d)), atmosphere); err != nil {
+			t.Fatal(err)
+		} else {
+			peak = math.Max(peak, x.LnJ)
+		}
+	}
+	for _, above := range []float64{0.01, 1, 3, 50} { // the last one is hopeless at first sight
+		for _, guess := range []float64{0, 300, s.T - 1e-3} {
+			_, err := f.KineticLimit(atmosphere, Target{LnJ: peak + above}, guess)
+			var no *NoLimitError
+			if !errors.As(err, &no) || math.Abs(no.Reached*math.Ln10-peak) > 1e-4 {
+				t.Errorf("%g above the peak from %g K: %v; want none, with log10 J reaching %g", above, guess, err, peak/math.Ln10)
+			}
 		}
 	}
 }

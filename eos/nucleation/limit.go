@@ -114,7 +114,8 @@ func (d *drift) slope(t *Target, x, ψ, lnA, wanted, given float64) (slope, tole
 func (f *Fluid) KineticLimit(P float64, t Target, guess float64) (Limit, error) {
 	l, err := f.LimitIfAny(P, t, guess)
 	if e, ok := err.(*NoLimitError); ok && e.Known && e.inside < e.End {
-		top, _ := f.peak(e.inside, e.End, P, t, false, true)
+		// of a target as large as J itself, ψ is largest where J is
+		top, _ := f.peak(e.inside, e.End, P, Target{LnJ: e.Reached * math.Ln10}, false, true)
 		err = f.noLimit(P, t, e.inside, e.End, top, e.Spinodal)
 	}
 	return l, err
@@ -277,7 +278,7 @@ func (f *Fluid) peak(inside, spinodal, given float64, t Target, atT, toEnd bool)
 		if v > ψ {
 			x, ψ = at, v
 		}
-		if ψ >= 0 {
+		if ψ >= 0 && !toEnd {
 			return x, ψ
 		}
 		if sign*slope > 0 {
