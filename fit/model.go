@@ -196,6 +196,16 @@ func (m *Model) lookup(name string, q *Query) lookup {
 	return found
 }
 
+// Origin tells where the model takes the parameter name of a query from: the index at of
+// an estimate in m.Parameters, that of the group of the query, else the mean of a pool, or
+// −1 without one. value is in the unit of the parameter, and variance, in its square, that
+// of a pool for a group that was not measured. An offset pooled about zero has a variance
+// and no estimate.
+func (m *Model) Origin(name string, q *Query) (at int, value, variance float64) {
+	l := m.lookup(name, q)
+	return l.at, l.value, l.variance
+}
+
 func (m *Model) isReference(q *Query) bool {
 	for i := range m.Parameters {
 		if e := &m.Parameters[i]; e.Name == Offset {
@@ -335,9 +345,9 @@ func (ph *Physics) saturationTemperature(P float64) (float64, bool) {
 	return s.T, err == nil
 }
 
-// spread is the standard deviation of a reading of the query beyond stated
-// uncertainties.
-func (m *Model) spread(q *Query) float64 {
+// Spread is the standard deviation in K of a reading of the query beyond its stated
+// uncertainty: that of its group or, for a group that was not measured, the largest.
+func (m *Model) Spread(q *Query) float64 {
 	s, _ := m.spreadOf(q)
 	return s
 }

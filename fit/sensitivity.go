@@ -52,7 +52,7 @@ func (m *Model) Sensitivity(q Query) (Sensitivity, error) {
 	if err != nil {
 		return Sensitivity{}, err
 	}
-	s := Sensitivity{Spread: m.spread(&q), SpreadAt: -1, Steepness: l.steepness, OwnFlux: q.OwnFlux}
+	s := Sensitivity{Spread: m.Spread(&q), SpreadAt: -1, Steepness: l.steepness, OwnFlux: q.OwnFlux}
 	if s.Prediction, err = m.Predict(q); err != nil {
 		return Sensitivity{}, err
 	}
