@@ -1,8 +1,10 @@
 package validate
 
 import (
+	"cmp"
 	"fmt"
 	"math"
+	"slices"
 	"sort"
 
 	"limsup/fit"
@@ -42,6 +44,44 @@ func (a *Assessment) worst() []Finding {
 			break
 		}
 		out = append(out, Finding{i, a.explain(i)})
+	}
+	return out
+}
+
+// Farthest returns the rows that keep allows with the largest standardised residuals,
+// or residuals where a row has none, which come last: at most n, the largest first. A
+// row that stayed intact is off only by as much as its reading lies above the
+// prediction.
+func (a *Assessment) Farthest(n int, keep func(i int) bool) []int {
+	type row struct {
+		index int
+		known bool
+		size  float64
+	}
+	var rows []row
+	for i := range a.Rows {
+		if !keep(i) {
+			continue
+		}
+		r := &a.Rows[i]
+		z, ok := r.Standardised()
+		if !ok {
+			z = r.Residual
+		}
+		if r.Intact {
+			z = math.Max(z, 0)
+		}
+		rows = append(rows, row{i, ok, math.Abs(z)})
+	}
+	slices.SortStableFunc(rows, func(a, b row) int {
+		if a.known != b.known {
+			return map[bool]int{true: -1, false: 1}[a.known]
+		}
+		return cmp.Compare(b.size, a.size)
+	})
+	out := make([]int, min(n, len(rows)))
+	for k := range out {
+		out[k] = rows[k].index
 	}
 	return out
 }

@@ -97,7 +97,9 @@ func figureOf(c *cli.Context, kind string) (*plot.Figure, error) {
 		case v.calibration == nil:
 			return nil, &usageError{"limsup plot profile tunes the model of the flags; --model and --tune none leave nothing to profile"}
 		}
-		return plot.Profiles(v.calibration)
+		bar := startProgress(c, "tuning along the profiles")
+		defer bar.Stop()
+		return plot.Profiles(v.calibration, bar.Set)
 	case "correlation":
 		if v != nil {
 			return plot.Correlation(v.Model)

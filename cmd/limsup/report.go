@@ -20,7 +20,7 @@ func reportCommand() *cli.Command {
 	return &cli.Command{
 		Name:  "report",
 		Usage: "verdict, tables and figures of a calibration as one page of HTML",
-		Description: "Writes a page that needs no network and no script, for screen, phone and paper. With --model the calibrated model is judged on the rows; if they are the very rows that it was calibrated on, the tuning is repeated, so that cross-validation and profile likelihoods can be shown. Without --model the model of the flags is tuned to the rows first; --tune none leaves it untuned.\n\n" +
+		Description: "Writes a page that needs no network and no script, for screen, phone and paper. With --model the calibrated model is judged on the rows; if they are the very rows that it was calibrated on, the tuning is repeated, so that cross-validation and profile likelihoods can be shown. Without --model the model of the flags is tuned to the rows first; --tune none leaves it untuned. Of more than 2000 rows figures and tables name the 200 that are farthest off, and figures draw the others in marks that many share; limsup validate --format csv lists every row.\n\n" +
 			"Examples: limsup report --data drops.csv --model lab.json --out report.html\n" +
 			"          limsup report --data drops.csv --tune threshold --tune slope/fluid --out report.html",
 		Flags: flags([]cli.Flag{dataFlag()}, tuneFlags(), []cli.Flag{foldsFlag()}, modelFlags(), []cli.Flag{seedFlag(), outFlag("the page")}),
@@ -34,9 +34,7 @@ func reportCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			bar = startProgress(c, "drawing the report")
-			r, err := newReport(c, v, bar.Set)
-			bar.Stop()
+			r, err := newReport(c, v)
 			if err != nil {
 				return err
 			}
@@ -57,7 +55,7 @@ func reportCommand() *cli.Command {
 }
 
 // newReport gathers what the page shows.
-func newReport(c *cli.Context, v *validation, progress func(done, total int)) (*report.Report, error) {
+func newReport(c *cli.Context, v *validation) (*report.Report, error) {
 	r := &report.Report{Assessment: v.Assessment, Calibration: v.calibration, NoCV: trimReason(v.noCV), Seed: c.Uint64("seed"), Version: version()}
 	noProfile := "the model was taken as it is, so that nothing was tuned whose likelihood could be profiled"
 	if name := c.String("model"); name != "" {
@@ -67,7 +65,9 @@ func newReport(c *cli.Context, v *validation, progress func(done, total int)) (*
 		}
 		r.Stored, r.Seed = file.Verdict, file.Seed
 		if v.allSeen() {
-			again, why, err := repeat(c, v, file, progress)
+			bar := startProgress(c, "repeating the calibration")
+			again, why, err := repeat(c, v, file, bar.Set)
+			bar.Stop()
 			if err != nil {
 				return nil, err
 			}
@@ -86,7 +86,9 @@ func newReport(c *cli.Context, v *validation, progress func(done, total int)) (*
 			return nil, err
 		}
 	}
-	r.Figures, r.Absent = plot.All(v.Assessment, r.Calibration, noProfile)
+	bar := startProgress(c, "drawing and profiling the likelihood")
+	r.Figures, r.Absent = plot.All(v.Assessment, r.Calibration, noProfile, bar.Set)
+	bar.Stop()
 	return r, nil
 }
 

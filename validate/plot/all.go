@@ -25,8 +25,8 @@ const mapsShown = 6
 // All builds every kind of figure of a model on its measurements: a map of each
 // fluid, at most six, those with most rows first; flux, isotherm, potential and
 // embryo of the first of them. c is the calibration behind the model, or nil, for
-// the reason noProfile.
-func All(a *validate.Assessment, c *fit.Calibration, noProfile string) ([]*Figure, []Absent) {
+// the reason noProfile. told, if not nil, hears how many of the profiles' points are done.
+func All(a *validate.Assessment, c *fit.Calibration, noProfile string, told func(done, total int)) ([]*Figure, []Absent) {
 	var out []*Figure
 	var absent []Absent
 	add := func(kind string, f *Figure, err error) {
@@ -62,7 +62,7 @@ func All(a *validate.Assessment, c *fit.Calibration, noProfile string) ([]*Figur
 		add("embryo", f, err)
 	}
 	if c != nil {
-		f, err := Profiles(c)
+		f, err := Profiles(c, told)
 		add("profile", f, err)
 	} else {
 		absent = append(absent, Absent{"profile", noProfile})

@@ -24,7 +24,8 @@
 //	r, ΔG   radius in nm, free energy of formation in units of kT
 //
 // Every number in a Figure is finite. What could not be drawn is said in its Notes;
-// nothing is clipped or thinned out in silence.
+// nothing is clipped or thinned out in silence. Of more than Many rows, the Listed
+// ones that are farthest off are points, the others a crowd, and the Notes say so.
 //
 // The package neither draws nor writes files, and chooses no colour by itself
 // except by role; see Palette.

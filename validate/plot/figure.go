@@ -42,6 +42,7 @@ const (
 	Band                 // the area between (X, Y) and (X2, Y2)
 	Level                // a line across the panel at Y[0]
 	Upright              // a line up the panel at X[0]
+	Crowd                // many points, in heaps; see Heaps
 )
 
 // Series is one set of points.

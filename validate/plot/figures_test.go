@@ -263,9 +263,24 @@ func TestFluxAndEmbryo(t *testing.T) {
 // standard uncertainty close to it.
 func TestProfiles(t *testing.T) {
 	c, _, _ := calibrated(t)
-	f, err := Profiles(c)
+	var told []int
+	f, err := Profiles(c, func(done, total int) {
+		if total != 11*c.Locations { // eleven values of each
+			t.Errorf("%d of %d points", done, total)
+		}
+		told = append(told, done)
+	})
 	if err != nil || f.Check() != nil {
 		t.Fatal(err)
+	}
+	for i, done := range told {
+		if done != i {
+			t.Errorf("told %v", told)
+			break
+		}
+	}
+	if len(told) != 11*c.Locations {
+		t.Errorf("told %d times", len(told))
 	}
 	if len(f.Panels) != c.Locations {
 		t.Fatalf("%d panels, want %d", len(f.Panels), c.Locations)

@@ -64,7 +64,7 @@ func Flux(in *Input, s State) (*Figure, error) {
 			levels = append(levels, in.Assessment.Rows[i].Log10Flux)
 		}
 	}
-	points := pointsByMethod(obs, in.Assessment, func(i int) bool { _, ok := offset[i]; return ok }, func(i int) (float64, float64) {
+	points := pointsByMethod(f, obs, in.Assessment, func(i int) bool { _, ok := offset[i]; return ok }, func(i int) (float64, float64) {
 		return obs[i].Temperature - offset[i], in.Assessment.Rows[i].Log10Flux
 	})
 	lo, hi := levels[0], levels[0]

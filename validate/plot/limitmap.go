@@ -71,11 +71,12 @@ type condition struct {
 func (in *Input) conditions() []condition {
 	obs := in.observations()
 	names, style := methods(obs)
+	method := methodNames()
 	var out []condition
 	for _, m := range names {
 		var rows []int
 		for i := range obs {
-			if in.mine(i) && methodOf(&obs[i]) == m {
+			if in.mine(i) && method(&obs[i]) == m {
 				rows = append(rows, i)
 			}
 		}
@@ -151,7 +152,7 @@ func LimitMap(in *Input) (*Figure, error) {
 	if obs == nil || lo > hi {
 		return f, nil
 	}
-	measured := pointsByMethod(obs, in.Assessment, in.mine, func(i int) (float64, float64) { return obs[i].Temperature, obs[i].Pressure / mega })
+	measured := pointsByMethod(f, obs, in.Assessment, in.mine, func(i int) (float64, float64) { return obs[i].Temperature, obs[i].Pressure / mega })
 	f.Panels[0].Series = append(f.Panels[0].Series, measured...)
 	pad := math.Max(0.08*(hi-lo), 0.02*math.Abs(hi))
 	near := Panel{Title: "the measured range, enlarged", X: whole.X, Y: whole.Y}

@@ -19,10 +19,11 @@ const heldWidth = 1e-3
 
 // Profiles shows for each location parameter how far twice the log likelihood
 // falls when the parameter is held away from its estimate and all others are tuned
-// anew, beside the parabola of the standard uncertainty.
+// anew, beside the parabola of the standard uncertainty. told, if not nil, hears how
+// many of the points are done.
 //
 // Errors: *EmptyError without a parameter that has an uncertainty.
-func Profiles(c *fit.Calibration) (*Figure, error) {
+func Profiles(c *fit.Calibration, told func(done, total int)) (*Figure, error) {
 	f := &Figure{ID: "profile", Kind: "profile", Title: "Profile likelihoods",
 		Caption: "How much worse the data fit, in units of −2Δln L, when one parameter is held and all others are tuned again. Where the curve crosses the level line lie the ends of a 95 % interval. A curve that follows the dashed parabola vindicates the standard uncertainty; a lopsided or flat one does not, and then the interval of the curve is to be used."}
 	limit := distuv.ChiSquared{K: 1}.Quantile(0.95)
@@ -39,9 +40,16 @@ func Profiles(c *fit.Calibration) (*Figure, error) {
 		f.Notes = append(f.Notes, fmt.Sprintf("The first %d of %d parameters are shown.", most, len(names)))
 		names = names[:most]
 	}
-	for _, i := range names {
+	at := sides(len(c.Data.Observations))
+	total := len(names) * (len(at[0]) + len(at[1]))
+	for n, i := range names {
 		e := &c.Parameters[i]
-		points, failed := profile(c, e)
+		before := n * total / len(names)
+		points, failed := profile(c, e, at, func(done int) {
+			if told != nil {
+				told(before+done, total)
+			}
+		})
 		if failed != nil {
 			f.Notes = append(f.Notes, fmt.Sprintf("The profile of %s ends where the tuning with it held has no smooth answer: %s.", Visible(e.Label()), failed))
 		}
@@ -69,15 +77,28 @@ func Profiles(c *fit.Calibration) (*Figure, error) {
 	return f, nil
 }
 
-// profile tunes the plan with one parameter held at values about its estimate.
-// failed is why the profile ends early, or nil.
-func profile(c *fit.Calibration, e *fit.Estimate) (points Series, failed error) {
+// sides are the distances from an estimate at which it is held, in units of its
+// standard uncertainty, outwards. Many rows take long, and their profile is near to
+// its parabola, so that fewer points, interpolated by join, show it as well.
+func sides(rows int) [2][]float64 {
+	if rows > Many {
+		return [2][]float64{{0, 1.25, 2.5}, {-1.25, -2.5}}
+	}
+	return [2][]float64{{0, 0.5, 1, 1.5, 2, 2.5}, {-0.5, -1, -1.5, -2, -2.5}}
+}
+
+// profile tunes the plan with one parameter held on both sides of its estimate; told
+// hears how many are done. failed is why the profile ends early, or nil.
+func profile(c *fit.Calibration, e *fit.Estimate, sides [2][]float64, told func(done int)) (points Series, failed error) {
 	points = Series{Name: "tuned with the parameter held", Shape: Points, Style: Style{Colour: First, Marker: Circle}}
 	type point struct{ x, drop float64 }
 	var found []point
-	for _, side := range [][]float64{{0, 0.5, 1, 1.5, 2, 2.5}, {-0.5, -1, -1.5, -2, -2.5}} {
+	done := 0
+	for _, side := range sides {
 		warm := c
 		for _, k := range side {
+			told(done)
+			done++
 			x := e.Value + k*e.U
 			if x <= e.Lower || x >= e.Upper {
 				continue

@@ -20,18 +20,19 @@ func Residuals(a *validate.Assessment) *Figure {
 	label := "(measured − predicted)/K"
 	f.Panels = append(f.Panels,
 		Panel{Title: "against pressure", X: Axis{Label: "P/MPa"}, Y: Axis{Label: label},
-			Series: append([]Series{zero}, pointsByMethod(obs, a, all, func(i int) (float64, float64) { return obs[i].Pressure / mega, residual(i) })...)},
+			Series: append([]Series{zero}, pointsByMethod(f, obs, a, all, func(i int) (float64, float64) { return obs[i].Pressure / mega, residual(i) })...)},
 		Panel{Title: "against reduced temperature", X: Axis{Label: "T/Tc"}, Y: Axis{Label: label},
-			Series: append([]Series{zero}, pointsByMethod(obs, a, all, func(i int) (float64, float64) {
+			Series: append([]Series{zero}, pointsByMethod(f, obs, a, all, func(i int) (float64, float64) {
 				return obs[i].Temperature / obs[i].Record.CriticalTemperature.Value, residual(i)
 			})...)})
 	names, _ := methods(obs)
+	method := methodNames()
 	at := map[string]float64{}
 	for i, m := range names {
 		at[m] = float64(i)
 	}
 	p := Panel{Title: "by method", X: Axis{Label: label}, Y: Axis{Label: "method", Categories: names},
-		Series: pointsByMethod(obs, a, all, func(i int) (float64, float64) { return residual(i), at[methodOf(&obs[i])] })}
+		Series: pointsByMethod(f, obs, a, all, func(i int) (float64, float64) { return residual(i), at[method(&obs[i])] })}
 	for k := range p.Series {
 		s := &p.Series[k]
 		for i := range s.X {
@@ -68,6 +69,6 @@ func Prediction(a *validate.Assessment) *Figure {
 	}
 	f.Panels = []Panel{{X: Axis{Label: "measured T/K"}, Y: Axis{Label: "predicted T/K"},
 		Series: append([]Series{{Name: "predicted = measured", X: []float64{lo, hi}, Y: []float64{lo, hi}, Style: Style{Colour: Ink, Width: 0.8}}},
-			pointsByMethod(obs, a, func(int) bool { return true }, func(i int) (float64, float64) { return obs[i].Temperature, a.Rows[i].Predicted })...)}}
+			pointsByMethod(f, obs, a, func(int) bool { return true }, func(i int) (float64, float64) { return obs[i].Temperature, a.Rows[i].Predicted })...)}}
 	return f
 }

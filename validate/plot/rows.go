@@ -18,8 +18,9 @@ const unnamedMethod = "method not stated"
 // methods are the methods of the rows in alphabetical order, with their styles.
 func methods(obs []fit.Observation) (names []string, style map[string]Style) {
 	style = map[string]Style{}
+	method := methodNames()
 	for i := range obs {
-		m := methodOf(&obs[i])
+		m := method(&obs[i])
 		if _, ok := style[m]; !ok {
 			names = append(names, m)
 			style[m] = Style{}
@@ -30,6 +31,19 @@ func methods(obs []fit.Observation) (names []string, style map[string]Style) {
 		style[m] = groupStyle(i)
 	}
 	return names, style
+}
+
+// methodNames is methodOf for many rows, which works out each name once.
+func methodNames() func(o *fit.Observation) string {
+	known := map[string]string{}
+	return func(o *fit.Observation) string {
+		m, ok := known[o.Method]
+		if !ok {
+			m = methodOf(o)
+			known[o.Method] = m
+		}
+		return m
+	}
 }
 
 func methodOf(o *fit.Observation) string {
@@ -101,31 +115,4 @@ func residualAt(a *validate.Assessment, i int) *validate.Residual {
 		return nil
 	}
 	return &a.Rows[i]
-}
-
-// pointsByMethod are series of the rows that keep allows, one for each method and,
-// apart from them, one for its intact rows; coordinates come from at.
-func pointsByMethod(obs []fit.Observation, a *validate.Assessment, keep func(i int) bool, at func(i int) (x, y float64)) []Series {
-	names, style := methods(obs)
-	var out []Series
-	for _, intact := range []bool{false, true} {
-		for _, m := range names {
-			s := Series{Name: m, Shape: Points, Style: style[m]}
-			if intact {
-				s.Name, s.Style.Open = m+", intact (the limit lies above)", true
-			}
-			for i := range obs {
-				if methodOf(&obs[i]) != m || (obs[i].Outcome != 0) != intact || !keep(i) {
-					continue
-				}
-				x, y := at(i)
-				s.X, s.Y = append(s.X, x), append(s.Y, y)
-				s.Text = append(s.Text, rowText(&obs[i], residualAt(a, i)))
-			}
-			if len(s.X) > 0 {
-				out = append(out, s)
-			}
-		}
-	}
-	return out
 }

@@ -267,7 +267,7 @@ func TestInBrowser(t *testing.T) {
 		name  string
 		get   func(*testing.T) (*Report, []byte)
 		looks []look
-	}{{"demo", demo, looks}, {"hostile", hostile, []look{looks[0], looks[len(looks)-1]}}} {
+	}{{"demo", demo, looks}, {"hostile", hostile, []look{looks[0], looks[len(looks)-1]}}, {"many", many, []look{looks[1], looks[2]}}} {
 		r, page := p.get(t)
 		file := filepath.Join(t.TempDir(), p.name+".html")
 		if err := os.WriteFile(file, page, 0o600); err != nil {

@@ -26,6 +26,7 @@ type made struct {
 var (
 	demoOnce    = sync.OnceValue(makeDemo)
 	hostileOnce = sync.OnceValue(makeHostile)
+	manyOnce    = sync.OnceValue(makeMany)
 )
 
 // demo is the report on the demonstration data (synthetic).
@@ -33,6 +34,38 @@ func demo(t *testing.T) (*Report, []byte) { return demoOnce().get(t) }
 
 // hostile is the same with names that try to break out of the page.
 func hostile(t *testing.T) (*Report, []byte) { return hostileOnce().get(t) }
+
+// many is a page on more rows than are shown one by one.
+func many(t *testing.T) (*Report, []byte) { return manyOnce().get(t) }
+
+// makeMany judges the model of the demonstration on its rows again and again, each time
+// a little warmer.
+func makeMany() *made {
+	of := demoOnce()
+	if of.err != nil {
+		return of
+	}
+	c := of.report.Calibration
+	d := *c.Data
+	d.Observations = nil
+	for k := 0; len(d.Observations) <= plot.Many; k++ {
+		for _, o := range c.Data.Observations {
+			o.Temperature += 0.01 * float64(k)
+			d.Observations = append(d.Observations, o)
+		}
+	}
+	a, err := validate.AssessModel(&d, c.Model())
+	if err != nil {
+		return &made{err: err}
+	}
+	r := &Report{Assessment: a, Seed: 1, Version: "under test"}
+	r.Figures, r.Absent = plot.All(a, nil, "nothing was tuned", nil)
+	var b bytes.Buffer
+	if err := Write(&b, r); err != nil {
+		return &made{err: err}
+	}
+	return &made{r, b.Bytes(), nil}
+}
 
 func (m *made) get(t *testing.T) (*Report, []byte) {
 	t.Helper()
@@ -83,7 +116,7 @@ func makeReport(set *measure.Set, lib *fluid.Library) *made {
 	if r.Effects, err = c.Model().SideEffects(c.Queries()); err != nil {
 		return fail(err)
 	}
-	r.Figures, r.Absent = plot.All(r.Assessment, c, "")
+	r.Figures, r.Absent = plot.All(r.Assessment, c, "", nil)
 	var b bytes.Buffer
 	if err := Write(&b, r); err != nil {
 		return fail(err)

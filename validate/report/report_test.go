@@ -74,7 +74,7 @@ func TestNothingFromElsewhere(t *testing.T) {
 // TestStructure: landmarks, headings in steps of one, unique ids, references that
 // exist, heads of tables with a scope, names for images.
 func TestStructure(t *testing.T) {
-	for name, get := range map[string]func(*testing.T) (*Report, []byte){"demo": demo, "hostile": hostile} {
+	for name, get := range map[string]func(*testing.T) (*Report, []byte){"demo": demo, "hostile": hostile, "many": many} {
 		t.Run(name, func(t *testing.T) {
 			_, page := get(t)
 			doc := parse(t, page)

@@ -1,6 +1,7 @@
 package report
 
 import (
+	"fmt"
 	"strconv"
 	"strings"
 	"unicode"
@@ -169,9 +170,14 @@ func numbers(f *plot.Figure, i int) *table {
 	if hasText {
 		t.Head = append(t.Head, heads("remark")...)
 	}
+	crowded := 0
 	for k := range p.Series {
 		s := &p.Series[k]
 		if s.Name == "" {
+			continue
+		}
+		if s.Shape == plot.Crowd {
+			crowded += len(s.X)
 			continue
 		}
 		for n := range max(len(s.X), len(s.Y)) {
@@ -192,6 +198,9 @@ func numbers(f *plot.Figure, i int) *table {
 			}
 			t.Rows = append(t.Rows, row)
 		}
+	}
+	if crowded > 0 {
+		t.Notes = append(t.Notes, fmt.Sprintf("The %d rows that share marks in the figure are not in this table. %s", crowded, everyRow))
 	}
 	return t
 }

@@ -186,11 +186,24 @@ func probability(p float64, ok bool) cell {
 	return optional(p, ok, 3)
 }
 
+// everyRow tells what lists the rows that a page leaves out.
+const everyRow = "All rows: limsup validate --format csv, with the same data and model."
+
 func (r *Report) rows() *table {
 	a := r.Assessment
 	t := &table{ID: "row-table", Fold: true, Caption: fmt.Sprintf("Residuals of all %d rows", len(a.Rows)),
 		Head: heads("row", "fluid", "method", "batch", "#P/kPa", "#measured/K", "#predicted/K", "#residual/K", "#standardised", "#leverage", "#left out/K", "outcome")}
-	for i := range a.Rows {
+	var shown []int
+	if len(a.Rows) > plot.Many {
+		shown = a.Farthest(plot.Listed, func(int) bool { return true })
+		t.Caption = fmt.Sprintf("Residuals of %d of all %d rows: those with the largest standardised residuals", len(shown), len(a.Rows))
+		t.Notes = []string{fmt.Sprintf("The other %d rows are not in this table. %s", len(a.Rows)-len(shown), everyRow)}
+	} else {
+		for i := range a.Rows {
+			shown = append(shown, i)
+		}
+	}
+	for _, i := range shown {
 		x, o := &a.Rows[i], &a.Data.Observations[i]
 		z, ok := x.Standardised()
 		t.Rows = append(t.Rows, []cell{{Text: plot.Place(o), Header: true}, text(o.Record.Key), text(o.Method), text(o.Batch), value(digits(o.Pressure/1e3, 7)), value(decimal(o.Temperature, 2)),
@@ -205,6 +218,11 @@ func (r *Report) excluded() *table {
 		return nil
 	}
 	t := &table{ID: "excluded-table", Caption: "Rows that were not used", Head: heads("row", "fluid", "reason"), Fold: len(list) > 20}
+	if all := len(list); all > plot.Many {
+		list = list[:plot.Listed]
+		t.Caption = fmt.Sprintf("The first %d of %d rows that were not used", len(list), all)
+		t.Notes = []string{fmt.Sprintf("The other %d are not in this table. All of them: limsup validate --format json, with the same data and model.", all-len(list))}
+	}
 	for _, e := range list {
 		o := fit.Observation{}
 		o.File, o.Line, o.Where = e.File, e.Line, e.Where

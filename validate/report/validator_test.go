@@ -25,7 +25,7 @@ func TestValidHTML(t *testing.T) {
 	}
 	dir := t.TempDir()
 	args := []string{"-Xss8m", "-jar", archive, "--Werror", "--stdout"}
-	for name, get := range map[string]func(*testing.T) (*Report, []byte){"demo": demo, "hostile": hostile} {
+	for name, get := range map[string]func(*testing.T) (*Report, []byte){"demo": demo, "hostile": hostile, "many": many} {
 		_, page := get(t)
 		file := filepath.Join(dir, name+".html")
 		if err := os.WriteFile(file, page, 0o600); err != nil {

@@ -165,8 +165,9 @@ func panel(p *figure.Panel) *plot.Plot {
 		return g
 	}
 	g.Add(&grid{x, y})
+	heaps := p.Heaps()
 	for i := range p.Series {
-		g.Add(&series{&p.Series[i]})
+		g.Add(&series{&p.Series[i], heaps[i]})
 	}
 	// A plot widens its axes for what it is given; here the panel decides.
 	g.X.Min, g.X.Max, g.Y.Min, g.Y.Max = x.Low, x.High, y.Low, y.High

@@ -28,6 +28,9 @@ func sample() *figure.Figure {
 	for d := figure.Solid; d <= figure.LongDashed; d++ {
 		series = append(series, figure.Series{Name: "line", X: []float64{1, 9}, Y: []float64{0, float64(d)}, Style: figure.Style{Dash: d, Colour: figure.Colour(int(d))}})
 	}
+	for m := figure.Circle; m <= figure.Plus; m++ {
+		series = append(series, figure.Series{Name: "crowd", Shape: figure.Crowd, X: []float64{2, 2, 7 + float64(m)}, Y: []float64{1, 1, float64(m)}, Style: figure.Style{Marker: m, Colour: figure.Second, Open: m%2 == 0}})
+	}
 	series = append(series,
 		figure.Series{Name: "band", Shape: figure.Band, X: []float64{1, 2}, Y: []float64{0, 1}, X2: []float64{2, 3}, Y2: []float64{0, 1}},
 		figure.Series{Name: "level", Shape: figure.Level, Y: []float64{2}}, figure.Series{Name: "upright", Shape: figure.Upright, X: []float64{4}})

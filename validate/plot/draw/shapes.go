@@ -21,10 +21,17 @@ func tint(c color.RGBA, share float64) color.RGBA {
 	return color.RGBA{mix(c.R), mix(c.G), mix(c.B), 255}
 }
 
-const markerSize = 2.6 // half-width in points
+// Half-widths in points: of a marker, and of the marks of a crowd.
+const (
+	markerSize        = 2.6
+	smallest, largest = 0.6, 1.5
+)
 
 // series is a plotter of one series.
-type series struct{ *figure.Series }
+type series struct {
+	*figure.Series
+	heaps []figure.Heap // of a crowd
+}
 
 // Plot implements plot.Plotter.
 func (s *series) Plot(c vgdraw.Canvas, p *plot.Plot) {
@@ -56,18 +63,23 @@ func (s *series) Plot(c vgdraw.Canvas, p *plot.Plot) {
 			if s.Shift != nil {
 				y += s.Shift[i]
 			}
-			marker(&c, s.Style, vg.Point{X: tx(s.X[i]), Y: ty(y)})
+			marker(&c, s.Style, vg.Point{X: tx(s.X[i]), Y: ty(y)}, markerSize)
+		}
+	case figure.Crowd:
+		for _, h := range s.heaps {
+			at := vg.Point{X: c.X(h.X), Y: c.Y(h.Y)}
+			marker(&c, s.Style, at, vg.Length(smallest+(largest-smallest)*h.Size))
 		}
 	}
 }
 
-func marker(c *vgdraw.Canvas, s figure.Style, at vg.Point) {
+func marker(c *vgdraw.Canvas, s figure.Style, at vg.Point, size vg.Length) {
 	ink := s.Colour.Of().Light
 	corners, closed := s.Marker.Outline()
 	var p vg.Path
 	if corners == nil {
-		p.Move(vg.Point{X: at.X + markerSize, Y: at.Y})
-		p.Arc(at, markerSize, 0, 2*math.Pi)
+		p.Move(vg.Point{X: at.X + size, Y: at.Y})
+		p.Arc(at, size, 0, 2*math.Pi)
 		p.Close()
 	}
 	move := true
@@ -76,7 +88,7 @@ func marker(c *vgdraw.Canvas, s figure.Style, at vg.Point) {
 			move = true
 			continue
 		}
-		q := vg.Point{X: at.X + vg.Length(k[0]*markerSize), Y: at.Y + vg.Length(k[1]*markerSize)}
+		q := vg.Point{X: at.X + vg.Length(k[0])*size, Y: at.Y + vg.Length(k[1])*size}
 		if move {
 			p.Move(q)
 		} else {
@@ -95,10 +107,13 @@ func marker(c *vgdraw.Canvas, s figure.Style, at vg.Point) {
 		}
 		c.Fill(p)
 	}
-	if s.Open || !closed {
-		c.SetLineWidth(1)
+	switch {
+	case s.Open || !closed:
+		c.SetLineWidth(min(1, size/2))
 		c.SetColor(ink)
-	} else {
+	case size < markerSize: // a border would eat it up
+		return
+	default:
 		c.SetLineWidth(0.5)
 		c.SetColor(white)
 	}
@@ -155,8 +170,8 @@ func drawEntry(c vgdraw.Canvas, s *figure.Series, x, y vg.Length) {
 	switch s.Shape {
 	case figure.Band:
 		c.FillPolygon(tint(s.Style.Colour.Of().Light, 0.2), []vg.Point{{X: x, Y: middle - 4}, {X: x + width, Y: middle - 4}, {X: x + width, Y: middle + 4}, {X: x, Y: middle + 4}})
-	case figure.Points:
-		marker(&c, s.Style, vg.Point{X: x + width/2, Y: middle})
+	case figure.Points, figure.Crowd:
+		marker(&c, s.Style, vg.Point{X: x + width/2, Y: middle}, markerSize)
 	default:
 		c.StrokeLine2(lineStyle(s.Style), x, middle, x+width, middle)
 	}

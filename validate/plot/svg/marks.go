@@ -31,11 +31,25 @@ func markerClass(s plot.Style) string {
 	return "filled"
 }
 
+// crowd draws a crowd as one path.
+func (w *writer) crowd(s *plot.Series, heaps []plot.Heap) {
+	var d strings.Builder
+	for _, h := range heaps {
+		d.WriteString(markerOutline(s.Style.Marker, w.x0+(w.x1-w.x0)*h.X, w.y0+(w.y1-w.y0)*h.Y, smallest+(largest-smallest)*h.Size))
+	}
+	look := map[string]string{"filled": "fill:currentColor", "open": "fill:var(--paper);stroke:currentColor;stroke-width:.8", "stroked": "fill:none;stroke:currentColor;stroke-width:.9"}[markerClass(s.Style)]
+	name := html.EscapeString(s.Name)
+	w.printf("<g class=\"crowd %s\"><path style=\"%s\" d=\"%s\" data-rows=\"%d\" data-series=\"%s\"><title>%s: %d rows in %d marks</title></path></g>\n",
+		s.Style.Colour.Of().Name, look, d.String(), len(s.X), name, name, len(s.X), len(heaps))
+}
+
 // markerPath draws a marker about a place.
-func markerPath(m plot.Marker, x, y float64) string {
+func markerPath(m plot.Marker, x, y float64) string { return markerOutline(m, x, y, markerSize) }
+
+// markerOutline draws a marker of half-width r.
+func markerOutline(m plot.Marker, x, y, r float64) string {
 	corners, closed := m.Outline()
 	if corners == nil {
-		r := markerSize
 		return fmt.Sprintf("M%s %sa%s %s 0 1 0 %s 0a%s %s 0 1 0 -%s 0Z", num(x-r), num(y), num(r), num(r), num(2*r), num(r), num(r), num(2*r))
 	}
 	var b strings.Builder
@@ -45,7 +59,7 @@ func markerPath(m plot.Marker, x, y float64) string {
 			op = "M"
 			continue
 		}
-		fmt.Fprintf(&b, "%s%s %s", op, num(x+markerSize*c[0]), num(y-markerSize*c[1]))
+		fmt.Fprintf(&b, "%s%s %s", op, num(x+r*c[0]), num(y-r*c[1]))
 		op = "L"
 	}
 	if closed {

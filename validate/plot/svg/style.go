@@ -16,7 +16,7 @@ func Swatch(s *plot.Series) string {
 	switch s.Shape {
 	case plot.Band:
 		w.printf(`<path class="area %s" d="M1 2H33V12H1Z"/>`, class)
-	case plot.Points:
+	case plot.Points, plot.Crowd:
 		w.printf(`<g class="points %s"><path class="%s" d="%s"/></g>`, class, markerClass(s.Style), markerPath(s.Style.Marker, 17, 7))
 	default:
 		w.printf(`<path class="line %s" stroke-width="%s"%s d="M1 7H33"/>`, class, num(s.Style.LineWidth()), dashes(s.Style))

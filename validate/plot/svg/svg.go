@@ -5,7 +5,8 @@
 // how wide a panel is. A panel is an image with a name and a description for those
 // who do not see it. Every marker carries a <title>, shown on hovering, and every
 // series its numbers in full precision as attributes data-x and data-y (separated by
-// spaces for a line), so that they can be read back.
+// spaces for a line), so that they can be read back. A crowd is one path with the
+// number of its rows as data-rows.
 //
 // Lengths are in units of the view box, which are pixels at the natural size, y
 // downwards. Nothing of a name is trusted: all text is escaped.
@@ -28,7 +29,8 @@ const (
 	left, right, top, bottom = 50.0, 12.0, 30.0, 42.0
 	fontSize                 = 12.0
 	markerSize               = 3.6
-	boldness                 = 1.12 // how much wider bold letters are
+	smallest, largest        = 0.8, 2.1 // marks of a crowd
+	boldness                 = 1.12     // how much wider bold letters are
 )
 
 // frame maps axis values to places in the view box.
@@ -90,8 +92,13 @@ func Panel(f *plot.Figure, i int) (string, error) {
 	if p.Matrix != nil {
 		w.matrix(p)
 	}
+	heaps := p.Heaps()
 	for k := range p.Series {
-		w.series(&p.Series[k])
+		if p.Series[k].Shape == plot.Crowd {
+			w.crowd(&p.Series[k], heaps[k])
+		} else {
+			w.series(&p.Series[k])
+		}
 	}
 	w.WriteString("</svg>")
 	return w.String(), nil
@@ -120,8 +127,11 @@ func describe(p *plot.Panel) string {
 			n = "a guide line"
 		}
 		b.WriteString(n)
-		if s.Shape == plot.Points {
+		switch s.Shape {
+		case plot.Points:
 			fmt.Fprintf(&b, " (%d points)", len(s.X))
+		case plot.Crowd:
+			fmt.Fprintf(&b, " (%d rows in shared marks)", len(s.X))
 		}
 	}
 	b.WriteString(". The table below the figure has the numbers.")

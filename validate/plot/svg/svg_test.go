@@ -113,3 +113,33 @@ func TestRefusal(t *testing.T) {
 		t.Errorf("%v", err)
 	}
 }
+
+// TestCrowd: a crowd is one path with a mark for each heap, however many its rows, and
+// says how many they are.
+func TestCrowd(t *testing.T) {
+	for m := plot.Circle; m <= plot.Plus; m++ {
+		s := plot.Series{Name: "a <b>", Shape: plot.Crowd, Style: plot.Style{Marker: m}}
+		for i := range 30000 {
+			s.X, s.Y = append(s.X, float64(i%100)), append(s.Y, float64(i%7))
+		}
+		f := &plot.Figure{ID: "f", Panels: []plot.Panel{{Series: []plot.Series{s}}}}
+		drawing, err := Panel(f, 0)
+		if err != nil {
+			t.Fatal(err)
+		}
+		texts(t, drawing) // is XML
+		_, crowd, ok := strings.Cut(drawing, `<g class="crowd ink">`)
+		if !ok || strings.Count(crowd, "<path") != 1 {
+			t.Fatalf("marker %d: no crowd of one path", m)
+		}
+		_, d, _ := strings.Cut(crowd, ` d="`)
+		d, rest, _ := strings.Cut(d, `"`)
+		heaps := len(f.Panels[0].Heaps()[0])
+		if got, want := strings.Count(d, "M"), heaps*strings.Count(markerPath(m, 0, 0), "M"); got != want {
+			t.Errorf("marker %d: %d strokes, want %d for %d heaps", m, got, want, heaps)
+		}
+		if want := ` data-rows="30000" data-series="a &lt;b&gt;"><title>a &lt;b&gt;: 30000 rows in `; !strings.HasPrefix(rest, want) {
+			t.Errorf("marker %d: %.120q, want %q", m, rest, want)
+		}
+	}
+}
