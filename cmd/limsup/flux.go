@@ -43,11 +43,14 @@ func fluxCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			p, err := fluxProduct(ph, P, ts)
-			if err != nil {
+			p, missing := fluxProduct(ph, P, ts)
+			if err := show(c, p); err != nil {
 				return err
 			}
-			return show(c, p)
+			if missing > 0 {
+				return &noAnswerError{fmt.Sprintf("%d of %d states have no flux; see the table", missing, len(ts))}
+			}
+			return nil
 		},
 	}
 }
@@ -89,12 +92,12 @@ func fluxTemperatures(c *cli.Context, ph *fit.Physics, P float64) ([]float64, er
 }
 
 type fluxJSON struct {
-	Fluid    string          `json:"fluid"`
-	Pressure float64         `json:"pressure_Pa"`
-	Points   []fluxPointJSON `json:"points"`
-	Limit    *float64        `json:"limit_K"`
-	Notes    []string        `json:"notes,omitempty"`
-	NoLimit  string          `json:"no_limit,omitempty"`
+	Fluid    string   `json:"fluid"`
+	Pressure float64  `json:"pressure_Pa"`
+	Points   []any    `json:"points"` // fluxPointJSON or noFluxJSON
+	Limit    *float64 `json:"limit_K"`
+	Notes    []string `json:"notes,omitempty"`
+	NoLimit  string   `json:"no_limit,omitempty"`
 }
 
 type fluxPointJSON struct {
@@ -104,7 +107,14 @@ type fluxPointJSON struct {
 	Barrier     float64 `json:"barrier_over_kT"`
 }
 
-func fluxProduct(ph *fit.Physics, P float64, ts []float64) (*product, error) {
+// noFluxJSON is a state without a flux.
+type noFluxJSON struct {
+	Temperature float64   `json:"temperature_K"`
+	Error       errorJSON `json:"error"`
+}
+
+// fluxProduct holds a flux for every temperature, or the reason why there is none.
+func fluxProduct(ph *fit.Physics, P float64, ts []float64) (p *product, missing int) {
 	j := fluxJSON{Fluid: ph.Record.Key, Pressure: P}
 	t := &table.Table{
 		Title: fmt.Sprintf("Nucleation flux of superheated %s at %s kPa", ph.Record.Key, number(P/1e3, 6)),
@@ -118,7 +128,11 @@ func fluxProduct(ph *fit.Physics, P float64, ts []float64) (*product, error) {
 	for _, T := range ts {
 		x, err := ph.Fluid.Flux(T, P)
 		if err != nil {
-			return nil, err
+			missing++
+			j.Points = append(j.Points, noFluxJSON{T, errorJSON{errorKind(err), err.Error()}})
+			none := table.Missing("no flux")
+			t.Rows = append(t.Rows, []table.Cell{table.Num(T), none.Note(err.Error()), none, none})
+			continue
 		}
 		j.Points = append(j.Points, fluxPointJSON{T, x.Log10J(), x.DT / math.Ln10, x.Barrier})
 		lg := table.Num(x.Log10J())
@@ -136,5 +150,5 @@ func fluxProduct(ph *fit.Physics, P float64, ts []float64) (*product, error) {
 		j.NoLimit = err.Error()
 		text = err.Error() + "."
 	}
-	return &product{json: func() any { return j }, csv: t, blocks: []block{{table: t}, {text: text}, cautionBlock()}}, nil
+	return &product{json: func() any { return j }, csv: t, blocks: []block{{table: t}, {text: text}, cautionBlock()}}, missing
 }

@@ -145,6 +145,8 @@ func TestGolden(t *testing.T) {
 		{"embryo-80", "80", 0, []string{"embryo", "--fluid", "n-pentane", "--temperature", "145 degC", "--pressure", "1 atm", "--count", "9"}},
 		{"embryo.json", "80", 0, []string{"embryo", "--fluid", "water", "--temperature", "20 degC", "--pressure", "10 kPa", "--count", "3", "--format", "json"}},
 		{"flux-80", "80", 0, []string{"flux", "--fluid", "n-hexane", "--pressure", "1 atm", "--count", "5"}},
+		{"flux-across-80", "80", 3, []string{"flux", "--fluid", "n-hexane", "--pressure", "1 atm", "--from", "330 K", "--to", "480 K", "--count", "4"}},
+		{"flux-across.json", "80", 3, []string{"flux", "--fluid", "n-hexane", "--pressure", "1 atm", "--temperature", "470 K", "--format", "json"}},
 		{"flux.json", "80", 0, []string{"flux", "--fluid", "n-hexane", "--pressure", "1 atm", "--temperature", "455 K", "--format", "json"}},
 	} {
 		t.Run(tt.name, func(t *testing.T) {
