@@ -7,8 +7,6 @@ import (
 
 	"github.com/urfave/cli/v2"
 
-	"limsup/data/fluid"
-	"limsup/data/measure"
 	"limsup/fit"
 	"limsup/validate/share"
 )
@@ -46,7 +44,7 @@ func (w bootstrapWork) Run(ctx context.Context, first, last int) ([]json.RawMess
 
 // writeBootstrapPart draws a share of the replicates and writes its part. What else
 // the command computes is quick, and left to gather.
-func writeBootstrapPart(c *cli.Context, s share.Share, set *measure.Set, lib *fluid.Library, plan fit.Plan) error {
+func writeBootstrapPart(c *cli.Context, s share.Share, t *task) error {
 	r, err := intervalOptions(c)
 	if err != nil {
 		return err
@@ -54,13 +52,9 @@ func writeBootstrapPart(c *cli.Context, s share.Share, set *measure.Set, lib *fl
 	if !c.IsSet("bootstrap") {
 		return &usageError{"--share needs --bootstrap: only its replicates are divided"}
 	}
-	d, err := fit.Prepare(set, lib, plan)
+	cal, err := t.tune()
 	if err != nil {
 		return err
-	}
-	cal, err := fit.Calibrate(d, plan, fit.Options{})
-	if err != nil {
-		return withExclusions(err, d)
 	}
 	bar := startProgress(c, "resampling")
 	defer bar.Stop()

@@ -35,23 +35,15 @@ func calibrateCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			lib, err := library(c)
-			if err != nil {
-				return err
-			}
-			set, err := readData(c, lib)
-			if err != nil {
-				return err
-			}
-			plan, err := planFromFlags(c)
+			t, err := taskFromFlags(c)
 			if err != nil {
 				return err
 			}
 			if divided {
-				return writeBootstrapPart(c, part, set, lib, plan)
+				return writeBootstrapPart(c, part, t)
 			}
 			bar := startProgress(c, "calibrating")
-			r, err := calibrate(set, lib, plan, c.String("folds"), bar.Set)
+			r, err := t.calibrate(c.String("folds"), bar.Set)
 			bar.Stop()
 			if err != nil {
 				return err
@@ -95,13 +87,22 @@ func (r *calibration) writeModel(name string, seed uint64) error {
 	return atomicfile.Write(name, func(w io.Writer) error { return f.Encode(w) })
 }
 
+// estimateJSON begins what is told of an estimated parameter.
+type estimateJSON struct {
+	Name  string   `json:"name"`
+	By    fit.By   `json:"by"`
+	Group string   `json:"group"`
+	Role  fit.Role `json:"role"`
+	Value float64  `json:"value"`
+	U     *float64 `json:"standard_uncertainty"`
+}
+
+func estimateToJSON(e *fit.Estimate) estimateJSON {
+	return estimateJSON{e.Name, e.By, e.Group, e.Role, e.Value, optional(e.U, e.HasU)}
+}
+
 type parameterJSON struct {
-	Name    string   `json:"name"`
-	By      fit.By   `json:"by"`
-	Group   string   `json:"group"`
-	Role    fit.Role `json:"role"`
-	Value   float64  `json:"value"`
-	U       *float64 `json:"standard_uncertainty"`
+	estimateJSON
 	Low     *float64 `json:"interval_95_low"`
 	High    *float64 `json:"interval_95_high"`
 	Degrees float64  `json:"degrees_of_freedom,omitempty"`
@@ -119,6 +120,10 @@ type cvJSON struct {
 	UntunedRMSE  float64 `json:"untuned_rmse_K"`
 	Difference   float64 `json:"difference_K"`
 	DifferenceSE float64 `json:"difference_se_K"`
+}
+
+func cvToJSON(cv *validate.CrossValidation) *cvJSON {
+	return &cvJSON{cv.Folds.Kind, cv.RMSE, cv.UntunedRMSE, cv.Difference, cv.DifferenceSE}
 }
 
 type identityJSON struct {
@@ -181,15 +186,9 @@ type calibrationJSON struct {
 }
 
 type calibratedRowJSON struct {
-	File         string  `json:"file"`
-	Line         int     `json:"line"`
-	Fluid        string  `json:"fluid"`
-	Method       string  `json:"method"`
-	Batch        string  `json:"batch,omitempty"`
-	Pressure     float64 `json:"pressure_Pa"`
-	Measured     float64 `json:"measured_K"`
-	Predicted    float64 `json:"predicted_K"`
-	Residual     float64 `json:"residual_K"`
+	File string `json:"file"`
+	Line int    `json:"line"`
+	observedJSON
 	Standardised float64 `json:"standardised"`
 	Leverage     float64 `json:"leverage"`
 	Cook         float64 `json:"cook_distance"`

@@ -6,27 +6,22 @@ import (
 
 	"limsup/data/caution"
 	"limsup/data/fluid"
-	"limsup/data/measure"
 	"limsup/fit"
 	"limsup/fit/modelfile"
 	"limsup/validate"
 )
 
-// calibrate runs the main job: prepare, tune, cross-validate, side effects.
-func calibrate(set *measure.Set, lib *fluid.Library, plan fit.Plan, folds string, progress func(done, total int)) (*calibration, error) {
-	d, err := fit.Prepare(set, lib, plan)
+// calibrate does the main job: tune, cross-validate, side effects.
+func (t *task) calibrate(folds string, progress func(done, total int)) (*calibration, error) {
+	c, err := t.tune()
 	if err != nil {
 		return nil, err
-	}
-	c, err := fit.Calibrate(d, plan, fit.Options{})
-	if err != nil {
-		return nil, withExclusions(err, d)
 	}
 	r := &calibration{Calibration: c}
 	if r.effects, err = c.Model().SideEffects(c.Queries()); err != nil {
 		return nil, err
 	}
-	if r.cv, r.noCV, err = crossValidation(d, plan, folds, c, progress); err != nil {
+	if r.cv, r.noCV, err = crossValidation(c.Data, t.plan, folds, c, progress); err != nil {
 		return nil, err
 	}
 	return r, nil
@@ -80,12 +75,12 @@ func (r *calibration) json() *calibrationJSON {
 	for i := range r.Parameters {
 		e := &r.Parameters[i]
 		lo, hi, ok := e.Interval(0.95)
-		j.Parameters = append(j.Parameters, parameterJSON{Name: e.Name, By: e.By, Group: e.Group, Role: e.Role, Value: e.Value, U: optional(e.U, e.HasU),
+		j.Parameters = append(j.Parameters, parameterJSON{estimateJSON: estimateToJSON(e),
 			Low: optional(lo, ok), High: optional(hi, ok), Degrees: e.Degrees,
 			Reason: e.Reason, Unit: e.Unit, AtBound: e.AtBound != "", Start: e.Start, Lower: e.Lower, Upper: e.Upper})
 	}
 	if r.cv != nil {
-		j.CV = &cvJSON{r.cv.Folds.Kind, r.cv.RMSE, r.cv.UntunedRMSE, r.cv.Difference, r.cv.DifferenceSE}
+		j.CV = cvToJSON(r.cv)
 		j.Verdict, j.VerdictText = r.cv.Verdict, r.cv.Reason
 	}
 	for _, e := range r.effects {
@@ -102,8 +97,8 @@ func (r *calibration) json() *calibrationJSON {
 		if k := x.Influence.Of; k >= 0 {
 			shiftOf = r.Parameters[k].Label()
 		}
-		j.Residuals = append(j.Residuals, calibratedRowJSON{o.File, o.Line, o.Record.Key, o.Method, o.Batch, o.Pressure, o.Temperature, x.Predicted,
-			x.Residual, x.Standardised, x.Leverage, x.Influence.Cook, x.Influence.Dffits, x.Influence.Shift, shiftOf, x.Log10Flux, o.Outcome != 0})
+		j.Residuals = append(j.Residuals, calibratedRowJSON{o.File, o.Line, observedToJSON(o, x.Predicted, x.Residual), x.Standardised, x.Leverage,
+			x.Influence.Cook, x.Influence.Dffits, x.Influence.Shift, shiftOf, x.Log10Flux, o.Outcome != 0})
 	}
 	return j
 }

@@ -3,7 +3,6 @@ package main
 import (
 	"fmt"
 	"math"
-	"path/filepath"
 	"slices"
 	"sort"
 	"strings"
@@ -27,19 +26,11 @@ func checkCommand() *cli.Command {
 			if err := begin(c); err != nil {
 				return err
 			}
-			lib, err := library(c)
+			t, err := taskFromFlags(c)
 			if err != nil {
 				return err
 			}
-			set, err := readData(c, lib)
-			if err != nil {
-				return err
-			}
-			plan, err := planFromFlags(c)
-			if err != nil {
-				return err
-			}
-			d, err := fit.Prepare(set, lib, plan)
+			d, err := fit.Prepare(t.set, t.library, t.plan)
 			if err != nil {
 				return err
 			}
@@ -146,11 +137,7 @@ func excludedTable(list []measure.Exclusion) *table.Table {
 	}
 	t := &table.Table{Title: fmt.Sprintf("Excluded rows (%d)", len(list)), Columns: []table.Column{{Name: "row", Title: "row"}, {Name: "fluid", Title: "fluid"}, {Name: "reason", Title: "reason", Wrap: 40}}}
 	for _, e := range list {
-		at := fmt.Sprintf("%s:%d", filepath.Base(e.File), e.Line)
-		if e.Where != "" {
-			at = filepath.Base(e.File) + ":" + e.Where
-		}
-		t.Rows = append(t.Rows, []table.Cell{table.Text(at), table.Text(e.Fluid), table.Text(e.Reason)})
+		t.Rows = append(t.Rows, []table.Cell{table.Text(shortPlace(e.File, e.Line, e.Where)), table.Text(e.Fluid), table.Text(e.Reason)})
 	}
 	return t
 }

@@ -7,7 +7,6 @@ import (
 	"github.com/urfave/cli/v2"
 
 	"limsup/data/quantity"
-	"limsup/fit"
 	"limsup/validate"
 )
 
@@ -40,11 +39,7 @@ func compareCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			lib, err := library(c)
-			if err != nil {
-				return err
-			}
-			set, err := readData(c, lib)
+			lib, set, err := measured(c)
 			if err != nil {
 				return err
 			}
@@ -149,14 +144,9 @@ type entryJSON struct {
 }
 
 type comparedJSON struct {
-	Name    string   `json:"name"`
-	By      fit.By   `json:"by"`
-	Group   string   `json:"group"`
-	Role    fit.Role `json:"role"`
-	Value   float64  `json:"value"`
-	U       *float64 `json:"standard_uncertainty"`
-	Unit    string   `json:"unit"`
-	AtBound bool     `json:"at_bound"`
+	estimateJSON
+	Unit    string `json:"unit"`
+	AtBound bool   `json:"at_bound"`
 }
 
 type asideJSON struct {
@@ -193,11 +183,11 @@ func comparedToJSON(r *validate.Comparison) *compareJSON {
 			x.Warnings = e.Calibration.Warnings
 			for k := range e.Calibration.Parameters {
 				p := &e.Calibration.Parameters[k]
-				x.Parameters = append(x.Parameters, comparedJSON{p.Name, p.By, p.Group, p.Role, p.Value, optional(p.U, p.HasU), p.Unit, p.AtBound != ""})
+				x.Parameters = append(x.Parameters, comparedJSON{estimateToJSON(p), p.Unit, p.AtBound != ""})
 			}
 		}
 		if cv := e.CV; x.Tuned {
-			x.AgainstItCV = &cvJSON{cv.Folds.Kind, cv.RMSE, cv.UntunedRMSE, cv.Difference, cv.DifferenceSE}
+			x.AgainstItCV = cvToJSON(cv)
 			x.Verdict = cv.Verdict
 		}
 		if e.Tied {

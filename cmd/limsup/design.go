@@ -140,26 +140,15 @@ func (d *campaignDesign) fromModel(c *cli.Context, in *campaign.Input) error {
 
 // fromData calibrates first.
 func (d *campaignDesign) fromData(c *cli.Context, in *campaign.Input) error {
-	var err error
-	if d.library, err = library(c); err != nil {
-		return err
-	}
-	set, err := readData(c, d.library)
+	t, err := taskFromFlags(c)
 	if err != nil {
 		return err
 	}
-	plan, err := planFromFlags(c)
-	if err != nil {
+	d.library = t.library
+	if in.Calibration, err = t.tune(); err != nil {
 		return err
 	}
-	data, err := fit.Prepare(set, d.library, plan)
-	if err != nil {
-		return err
-	}
-	if in.Calibration, err = fit.Calibrate(data, plan, fit.Options{}); err != nil {
-		return withExclusions(err, data)
-	}
-	in.Model, in.Data, d.fitPlan = in.Calibration.Model(), data, in.Calibration.Plan
+	in.Model, in.Data, d.fitPlan = in.Calibration.Model(), in.Calibration.Data, in.Calibration.Plan
 	return nil
 }
 
@@ -344,12 +333,8 @@ func (d *campaignDesign) rival(c *cli.Context, in *campaign.Input, text string) 
 	if err != nil {
 		return err
 	}
-	data, err := fit.Prepare(set, d.library, k.Plan)
-	if err != nil {
+	if r.Calibration, err = (&task{d.library, set, k.Plan}).tune(); err != nil {
 		return err
-	}
-	if r.Calibration, err = fit.Calibrate(data, k.Plan, fit.Options{}); err != nil {
-		return withExclusions(err, data)
 	}
 	r.Model = r.Calibration.Model()
 	return nil

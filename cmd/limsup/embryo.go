@@ -20,14 +20,7 @@ func embryoCommand() *cli.Command {
 			"Example: limsup embryo --fluid n-pentane --temperature \"145 degC\" --pressure \"1 atm\"",
 		Flags: flags(stateFlags(), []cli.Flag{&cli.IntFlag{Name: "count", Value: 33, Usage: "`NUMBER` of points of the free energy curve"}}, modelFlags(), []cli.Flag{formatFlag(), outFlag("the table")}),
 		Action: func(c *cli.Context) error {
-			if err := begin(c); err != nil {
-				return err
-			}
-			s, err := sourceFromFlags(c)
-			if err != nil {
-				return err
-			}
-			r, err := s.oneFluid(c)
+			s, r, err := beginWithFluid(c)
 			if err != nil {
 				return err
 			}
@@ -39,9 +32,9 @@ func embryoCommand() *cli.Command {
 			if err != nil {
 				return err
 			}
-			n := c.Int("count")
-			if n < 2 || n > 1_000_000 {
-				return &usageError{fmt.Sprintf("--count %d: want 2 to 1000000", n)}
+			n, err := points(c, c.Int("count"))
+			if err != nil {
+				return err
 			}
 			ph, err := s.physics(r, true)
 			if err != nil {

@@ -179,20 +179,30 @@ func quantities(c *cli.Context, flag string, d quantity.Dimension) ([]float64, e
 	return out, nil
 }
 
+// points reads --count.
+func points(c *cli.Context, fallback int) (int, error) {
+	n := fallback
+	if c.IsSet("count") {
+		n = c.Int("count")
+	}
+	if n < 2 || n > 1_000_000 {
+		return 0, &usageError{fmt.Sprintf("--count %d: want 2 to 1000000", n)}
+	}
+	return n, nil
+}
+
 // sweep reads --from, --to and --count; without --from and --to there is no sweep.
 func sweep(c *cli.Context, d quantity.Dimension, defaultCount int) ([]float64, error) {
-	from, to, n := c.String("from"), c.String("to"), c.Int("count")
+	from, to := c.String("from"), c.String("to")
 	if from == "" && to == "" {
 		return nil, nil
 	}
 	if from == "" || to == "" {
 		return nil, &usageError{"a sweep needs both --from and --to"}
 	}
-	if !c.IsSet("count") {
-		n = defaultCount
-	}
-	if n < 2 || n > 1_000_000 {
-		return nil, &usageError{fmt.Sprintf("--count %d: want 2 to 1000000", n)}
+	n, err := points(c, defaultCount)
+	if err != nil {
+		return nil, err
 	}
 	lo, err := quantity.ParseIn(from, d)
 	if err != nil {

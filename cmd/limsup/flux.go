@@ -20,14 +20,7 @@ func fluxCommand() *cli.Command {
 			"Example: limsup flux --fluid n-hexane --pressure \"1 atm\" --from \"450 K\" --to \"460 K\" --count 11",
 		Flags: flags(stateFlags(), sweepFlags("TEMPERATURE"), modelFlags(), []cli.Flag{formatFlag(), outFlag("the table")}),
 		Action: func(c *cli.Context) error {
-			if err := begin(c); err != nil {
-				return err
-			}
-			s, err := sourceFromFlags(c)
-			if err != nil {
-				return err
-			}
-			r, err := s.oneFluid(c)
+			s, r, err := beginWithFluid(c)
 			if err != nil {
 				return err
 			}
@@ -69,11 +62,9 @@ func fluxTemperatures(c *cli.Context, ph *fit.Physics, P float64) ([]float64, er
 	if ts = append(ts, more...); len(ts) > 0 {
 		return ts, nil
 	}
-	n := 21
-	if c.IsSet("count") {
-		if n = c.Int("count"); n < 2 || n > 1_000_000 {
-			return nil, &usageError{fmt.Sprintf("--count %d: want 2 to 1000000", n)}
-		}
+	n, err := points(c, 21)
+	if err != nil {
+		return nil, err
 	}
 	end := 0.0
 	if l, err := ph.Limit(P); err == nil {

@@ -7,6 +7,7 @@ import (
 	"github.com/urfave/cli/v2"
 
 	"limsup/cmd/limsup/internal/table"
+	"limsup/data/fluid"
 	"limsup/data/quantity"
 	"limsup/eos"
 )
@@ -19,14 +20,7 @@ func isothermCommand() *cli.Command {
 			"Example: limsup isotherm --fluid n-pentane --temperature \"147 degC\" --count 40",
 		Flags: flags(stateFlags()[:2], sweepFlags("VOLUME"), modelFlags(), []cli.Flag{formatFlag(), outFlag("the table")}),
 		Action: func(c *cli.Context) error {
-			if err := begin(c); err != nil {
-				return err
-			}
-			s, err := sourceFromFlags(c)
-			if err != nil {
-				return err
-			}
-			r, err := s.oneFluid(c)
+			s, r, err := beginWithFluid(c)
 			if err != nil {
 				return err
 			}
@@ -68,15 +62,25 @@ func begin(c *cli.Context) error {
 	return checkFormat(c)
 }
 
+// beginWithFluid begins a command that shows one fluid under a model.
+func beginWithFluid(c *cli.Context) (*source, *fluid.Record, error) {
+	if err := begin(c); err != nil {
+		return nil, nil, err
+	}
+	s, err := sourceFromFlags(c)
+	if err != nil {
+		return nil, nil, err
+	}
+	r, err := s.oneFluid(c)
+	return s, r, err
+}
+
 // isothermVolumes are volumes in geometric steps from the compressed liquid to
 // twice the volume of the saturated vapour.
 func isothermVolumes(m *eos.Model, iso *eos.Isotherm, c *cli.Context) ([]float64, error) {
-	n := 25
-	if c.IsSet("count") {
-		n = c.Int("count")
-	}
-	if n < 2 || n > 1_000_000 {
-		return nil, &usageError{fmt.Sprintf("--count %d: want 2 to 1000000", n)}
+	n, err := points(c, 25)
+	if err != nil {
+		return nil, err
 	}
 	lo, hi := 1.2*m.B, 100*m.B
 	if iso.Subcritical {

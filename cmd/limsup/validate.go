@@ -71,27 +71,15 @@ func newValidation(c *cli.Context, progress func(done, total int)) (*validation,
 		}
 		return predictAll(c, name)
 	}
-	lib, err := library(c)
+	t, err := taskFromFlags(c)
 	if err != nil {
 		return nil, err
 	}
-	set, err := readData(c, lib)
+	cal, err := t.tune()
 	if err != nil {
 		return nil, err
 	}
-	plan, err := planFromFlags(c)
-	if err != nil {
-		return nil, err
-	}
-	d, err := fit.Prepare(set, lib, plan)
-	if err != nil {
-		return nil, err
-	}
-	cal, err := fit.Calibrate(d, plan, fit.Options{})
-	if err != nil {
-		return nil, withExclusions(err, d)
-	}
-	cv, noCV, err := crossValidation(d, plan, c.String("folds"), cal, progress)
+	cv, noCV, err := crossValidation(cal.Data, t.plan, c.String("folds"), cal, progress)
 	if err != nil {
 		return nil, err
 	}

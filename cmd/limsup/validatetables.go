@@ -35,16 +35,10 @@ type validationJSON struct {
 }
 
 type residualJSON struct {
-	File         string   `json:"file"`
-	Line         int      `json:"line"`
-	Where        string   `json:"where,omitempty"`
-	Fluid        string   `json:"fluid"`
-	Method       string   `json:"method"`
-	Batch        string   `json:"batch,omitempty"`
-	Pressure     float64  `json:"pressure_Pa"`
-	Measured     float64  `json:"measured_K"`
-	Predicted    float64  `json:"predicted_K"`
-	Residual     float64  `json:"residual_K"`
+	File  string `json:"file"`
+	Line  int    `json:"line"`
+	Where string `json:"where,omitempty"`
+	observedJSON
 	U            *float64 `json:"standard_uncertainty_K"`
 	Standardised *float64 `json:"standardised"`
 	Leverage     *float64 `json:"leverage"`
@@ -53,6 +47,21 @@ type residualJSON struct {
 	Log10Flux    *float64 `json:"log10_flux"`
 	Outcome      string   `json:"outcome"`
 	Warnings     []string `json:"warnings,omitempty"`
+}
+
+// observedJSON is an observation and what the model has for it.
+type observedJSON struct {
+	Fluid     string  `json:"fluid"`
+	Method    string  `json:"method"`
+	Batch     string  `json:"batch,omitempty"`
+	Pressure  float64 `json:"pressure_Pa"`
+	Measured  float64 `json:"measured_K"`
+	Predicted float64 `json:"predicted_K"`
+	Residual  float64 `json:"residual_K"`
+}
+
+func observedToJSON(o *fit.Observation, predicted, residual float64) observedJSON {
+	return observedJSON{o.Record.Key, o.Method, o.Batch, o.Pressure, o.Temperature, predicted, residual}
 }
 
 type groupJSON struct {
@@ -107,8 +116,8 @@ func (v *validation) json() *validationJSON {
 		r := &v.Rows[i]
 		o := &v.Data.Observations[i]
 		z, hasZ := r.Standardised()
-		j.Residuals = append(j.Residuals, residualJSON{File: o.File, Line: o.Line, Where: o.Where, Fluid: o.Record.Key, Method: o.Method, Batch: o.Batch,
-			Pressure: o.Pressure, Measured: o.Temperature, Predicted: r.Predicted, Residual: r.Residual, U: optional(r.U, r.HasU),
+		j.Residuals = append(j.Residuals, residualJSON{File: o.File, Line: o.Line, Where: o.Where,
+			observedJSON: observedToJSON(o, r.Predicted, r.Residual), U: optional(r.U, r.HasU),
 			Standardised: optional(z, hasZ), Leverage: optional(r.Leverage, r.HasLeverage), LeftOut: optional(r.LeftOut, r.HasLeftOut),
 			LeftOutU: optional(r.LeftOutU, r.LeftOutU > 0), Log10Flux: optional(r.Log10Flux, r.HasFlux), Outcome: o.Outcome.String(), Warnings: r.Warnings})
 	}
@@ -116,7 +125,7 @@ func (v *validation) json() *validationJSON {
 		j.Groups = append(j.Groups, groupJSON{g.By, g.Name, g.N, g.Intact, g.Bias, g.RMSE, g.MeanAbsErr, g.Worst, optional(g.LeftOutRMSE, g.HasLeftOut)})
 	}
 	if cv := v.CrossValidation; cv != nil {
-		j.CV = &cvJSON{cv.Folds.Kind, cv.RMSE, cv.UntunedRMSE, cv.Difference, cv.DifferenceSE}
+		j.CV = cvToJSON(cv)
 		j.Verdict, j.VerdictText = &cv.Verdict, cv.Reason
 	}
 	for _, t := range v.Trends {
@@ -202,11 +211,15 @@ func without(t *table.Table, column int) *table.Table {
 }
 
 // rowName is the short place of a row: "drops.csv:12".
-func rowName(o *fit.Observation) string {
-	if o.Where != "" {
-		return filepath.Base(o.File) + ":" + o.Where
+func rowName(o *fit.Observation) string { return shortPlace(o.File, o.Line, o.Where) }
+
+// shortPlace is a place without the folders of its file; where, if not empty, is that in
+// a workbook.
+func shortPlace(file string, line int, where string) string {
+	if where != "" {
+		return filepath.Base(file) + ":" + where
 	}
-	return fmt.Sprintf("%s:%d", filepath.Base(o.File), o.Line)
+	return fmt.Sprintf("%s:%d", filepath.Base(file), line)
 }
 
 func (v *validation) groupTable() *table.Table {
