@@ -177,12 +177,19 @@ func (d *damped) search(task *optimize.Task, ask func(optimize.Operation) bool) 
 		if d.converged(task.F) {
 			return true
 		}
+		bold := false
 		for rejected := 0; ; rejected++ {
 			pred, ok := d.step(λ)
 			moved := ok && d.trial(task.X)
 			if !moved && ok || rejected == maxRejections {
-				d.stalled()
-				return true
+				if d.stalled(); d.end != blocked || bold {
+					return true
+				}
+				// Where parameters are tied together, damping in proportion to their own
+				// curvature leaves steps along their valley too short to be seen.
+				bold, d.end = true, running
+				λ, ν, rejected = d.m.floor(), 2, 0
+				continue
 			}
 			ρ := math.Inf(-1)
 			if ok && pred > 0 {
