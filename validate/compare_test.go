@@ -387,3 +387,51 @@ func TestTiesByHand(t *testing.T) {
 		}
 	}
 }
+
+// With survival noise each variant is tuned by the law of boiling of every droplet, as
+// calibrate and validate would tune it, and the rows keep their own flux.
+func TestCompareSurvival(t *testing.T) {
+	lib := library(t)
+	known := func(name string) (string, error) {
+		r, err := lib.Find(name)
+		if err != nil {
+			return "", err
+		}
+		return r.Key, nil
+	}
+	set, err := measure.ReadFile("../data/demo/droplets.csv", measure.Options{KnownFluid: known})
+	if err != nil {
+		t.Fatal(err)
+	}
+	candidates := parsed(t, "soave", "peng-robinson")
+	for i := range candidates {
+		candidates[i].Plan.Noise.Kind = fit.Survival
+	}
+	c, err := Compare(context.Background(), set, lib, CompareOptions{Candidates: candidates, Folds: "fluid", Keep: DefaultKeep})
+	if err != nil {
+		t.Fatal(err)
+	}
+	e := c.entryNamed(t, "soave + prefactor")
+	p := fit.Plan{Terms: []fit.Term{{Name: fit.Prefactor}}, Noise: fit.Noise{Kind: fit.Survival}}
+	d := prepared(t, set, lib, p)
+	all := calibrated(t, d, p)
+	folds, err := NewFolds("fluid", d.Observations, 0)
+	if err != nil {
+		t.Fatal(err)
+	}
+	cv, err := CrossValidate(d, p, folds, all)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if math.Abs(e.CVRMSE-cv.RMSE) > refitTolerance || math.Abs(e.RMSE-all.RMSE) > refitTolerance {
+		t.Errorf("compared %.9g K and %.9g K left out; validated %.9g K and %.9g K", e.RMSE, e.CVRMSE, all.RMSE, cv.RMSE)
+	}
+	gaussian := calibrated(t, d, fit.Plan{Terms: p.Terms})
+	a, b, g := &e.Calibration.Parameters[0], &all.Parameters[0], &gaussian.Parameters[0]
+	if math.Abs(a.Value-b.Value) > 1e-6 || math.Abs(a.Value-g.Value) < 0.1*g.U {
+		t.Errorf("prefactor %.9g compared, %.9g calibrated, %.9g with gaussian noise", a.Value, b.Value, g.Value)
+	}
+	if c.entryNamed(t, "soave").Calibration.Plan.Noise.Kind != fit.Survival {
+		t.Error("the untuned variant has another noise")
+	}
+}

@@ -25,7 +25,7 @@ func compareCommand() *cli.Command {
 			&cli.StringFlag{Name: "folds", Usage: "what is left out at a time: `KIND` rows, fluid, method, batch, pressure, or a number of parts (default: fluid, or rows with one fluid)"},
 			&cli.StringFlag{Name: "keep", Value: "90%", Usage: "`SHARE` of the rows that a variant must be able to predict"},
 			&cli.BoolFlag{Name: "nested", Usage: "estimate the error of choosing the best and then tuning it"},
-			&cli.StringFlag{Name: "noise", Usage: "`DISTRIBUTION` of the residuals: gaussian, student or student=DEGREES (default: gaussian)"},
+			&cli.StringFlag{Name: "noise", Usage: "`DISTRIBUTION` of the residuals: gaussian; student, student=DEGREES or student=estimate; survival (default: gaussian)"},
 			fluidsFileFlag(), formatFlag(), seedFlag(), shareFlag(), outFlag("the tables, or the part of a share,")},
 		Action: func(c *cli.Context) error {
 			if err := begin(c); err != nil {
