@@ -1,16 +1,16 @@
 package fit
 
 import (
+	"context"
 	"fmt"
 	"math"
 	"math/rand/v2"
-	"runtime"
 	"slices"
-	"sync"
 
 	"gonum.org/v1/gonum/stat/distuv"
 
 	"limsup/data/measure"
+	"limsup/fit/jobs"
 )
 
 // Resampling says what a bootstrap draws.
@@ -74,35 +74,13 @@ func (c *Calibration) Resample(o BootstrapOptions) ([]Replicate, error) {
 			return nil, &OptionError{"resample", string(o.Resample), fmt.Sprintf("data with two or more of them; here all rows have %s %q", by, names[0])}
 		}
 	}
-	workers := o.Workers
-	if workers <= 0 {
-		workers = runtime.GOMAXPROCS(0)
+	var done func(int)
+	if o.Progress != nil {
+		done = func(count int) { o.Progress(count, o.Count) }
 	}
 	out := make([]Replicate, o.Count)
-	next := make(chan int)
-	var wg sync.WaitGroup
-	var mu sync.Mutex
-	done := 0
-	for range min(workers, o.Count) {
-		wg.Add(1)
-		go func() {
-			defer wg.Done()
-			for k := range next {
-				out[k] = c.replicate(&o, o.First+k)
-				mu.Lock()
-				if done++; o.Progress != nil {
-					o.Progress(done, o.Count)
-				}
-				mu.Unlock()
-			}
-		}()
-	}
-	for k := range o.Count {
-		next <- k
-	}
-	close(next)
-	wg.Wait()
-	return out, nil
+	err := jobs.Run(context.Background(), o.Count, o.Workers, func(k int) { out[k] = c.replicate(&o, o.First+k) }, done)
+	return out, err
 }
 
 func (r Resampling) by() (By, bool) {

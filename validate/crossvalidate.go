@@ -11,6 +11,7 @@ import (
 
 	"limsup/data/measure"
 	"limsup/fit"
+	"limsup/fit/jobs"
 )
 
 // Verdict says whether tuning helps on data that it has not seen.
@@ -141,22 +142,7 @@ const largeData = 20000
 // parallel runs n independent jobs, at most so many at a time, on the processors there
 // are.
 func parallel(n, most int, job func(k int)) {
-	var wg sync.WaitGroup
-	next := make(chan int)
-	for range min(n, most, runtime.GOMAXPROCS(0)) {
-		wg.Add(1)
-		go func() {
-			defer wg.Done()
-			for k := range next {
-				job(k)
-			}
-		}()
-	}
-	for k := range n {
-		next <- k
-	}
-	close(next)
-	wg.Wait()
+	_ = jobs.Run(context.Background(), n, min(most, runtime.GOMAXPROCS(0)), job, nil) // nothing ends this context
 }
 
 // leaveOut fills the rows of fold k.

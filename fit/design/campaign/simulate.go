@@ -5,12 +5,11 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
-	"runtime"
 	"slices"
-	"sync"
 
 	"limsup/data/measure"
 	"limsup/fit"
+	"limsup/fit/jobs"
 )
 
 // This file checks a plan by carrying it out: readings are drawn at the planned
@@ -208,38 +207,11 @@ func (p *Plan) simulate(ctx context.Context, plan fit.Plan, base []truth, count 
 		}
 	}
 	plan = withGroups(plan, rows)
-	workers := o.Workers
-	if workers <= 0 {
-		workers = runtime.GOMAXPROCS(0)
-	}
 	out := make([]outcome, o.Campaigns)
-	next := make(chan int)
-	var wg sync.WaitGroup
-	var mu sync.Mutex
-	finished := 0
-	for range min(workers, o.Campaigns) {
-		wg.Add(1)
-		go func() {
-			defer wg.Done()
-			for k := range next {
-				out[k] = p.campaign(plan, rows, rand.New(rand.NewPCG(o.Seed, uint64(k)+1)))
-				mu.Lock()
-				finished++
-				done(finished)
-				mu.Unlock()
-			}
-		}()
-	}
-	var stopped error
-	for k := range out {
-		if stopped = ctx.Err(); stopped != nil {
-			break
-		}
-		next <- k
-	}
-	close(next)
-	wg.Wait()
-	return out, stopped
+	err := jobs.Run(ctx, o.Campaigns, o.Workers, func(k int) {
+		out[k] = p.campaign(plan, rows, rand.New(rand.NewPCG(o.Seed, uint64(k)+1)))
+	}, done)
+	return out, err
 }
 
 // campaign draws one set of readings and calibrates to it.
