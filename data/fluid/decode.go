@@ -150,13 +150,19 @@ func (r *reader) plausible(path string, rec *Record) {
 	}
 }
 
-func (f *fields) tension(key string) *Tension {
+// table reads a table that may be absent; nil then, and after a problem.
+func (f *fields) table(key string) *fields {
 	v, path, ok := f.get(key)
 	if !ok {
 		return nil
 	}
-	t, ok := f.r.table(path, v)
-	if !ok {
+	t, _ := f.r.table(path, v)
+	return t
+}
+
+func (f *fields) tension(key string) *Tension {
+	t := f.table(key)
+	if t == nil {
 		return nil
 	}
 	before := len(f.r.problems)
@@ -178,11 +184,11 @@ func (f *fields) tension(key string) *Tension {
 	}
 	fn, err := out.build()
 	if err != nil {
-		f.r.failure(path, err)
+		f.r.failure(t.path, err)
 		return nil
 	}
 	if out.Hi > out.CriticalTemperature {
-		f.r.problem(join(path, "range"), "range ends at %.10g K, above Tc = %.10g K", out.Hi, out.CriticalTemperature)
+		f.r.problem(join(t.path, "range"), "range ends at %.10g K, above Tc = %.10g K", out.Hi, out.CriticalTemperature)
 		return nil
 	}
 	out.fn = fn
@@ -209,12 +215,8 @@ func (f *fields) ranged() (lo, hi float64) {
 }
 
 func (f *fields) pressure(key string, rec *Record) *SaturationPressure {
-	v, path, ok := f.get(key)
-	if !ok {
-		return nil
-	}
-	t, ok := f.r.table(path, v)
-	if !ok {
+	t := f.table(key)
+	if t == nil {
 		return nil
 	}
 	before := len(f.r.problems)
@@ -229,19 +231,15 @@ func (f *fields) pressure(key string, rec *Record) *SaturationPressure {
 	if out.Form != "" {
 		t.close()
 	}
-	if len(f.r.problems) > before || !f.r.built(path, out.build(rec.Key)) {
+	if len(f.r.problems) > before || !f.r.built(t.path, out.build(rec.Key)) {
 		return nil
 	}
 	return out
 }
 
 func (f *fields) density(key, property string, rec *Record) *Density {
-	v, path, ok := f.get(key)
-	if !ok {
-		return nil
-	}
-	t, ok := f.r.table(path, v)
-	if !ok {
+	t := f.table(key)
+	if t == nil {
 		return nil
 	}
 	before := len(f.r.problems)
@@ -264,7 +262,7 @@ func (f *fields) density(key, property string, rec *Record) *Density {
 	if len(f.r.problems) > before || tc == 0 || m == 0 { // the latter are problems of their own
 		return nil
 	}
-	if !f.r.built(path, out.build(rec.Key, property, tc, m)) {
+	if !f.r.built(t.path, out.build(rec.Key, property, tc, m)) {
 		return nil
 	}
 	return out
