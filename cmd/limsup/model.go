@@ -2,14 +2,12 @@ package main
 
 import (
 	"fmt"
-	"os"
 
 	"github.com/urfave/cli/v2"
 
 	"limsup/data/fluid"
 	"limsup/data/quantity"
 	"limsup/fit"
-	"limsup/fit/modelfile"
 )
 
 // source is what a command evaluates: a model and the fluids it knows.
@@ -75,12 +73,7 @@ func unlessGiven(records []*fluid.Record, c *cli.Context, lib *fluid.Library) []
 }
 
 func readModel(name string) (*fit.Model, []*fluid.Record, error) {
-	f, err := os.Open(name)
-	if err != nil {
-		return nil, nil, err
-	}
-	defer f.Close()
-	file, err := modelfile.Decode(f, name)
+	file, err := decodeModel(name)
 	if err != nil {
 		return nil, nil, err
 	}

@@ -3,14 +3,12 @@ package main
 import (
 	"errors"
 	"fmt"
-	"os"
 
 	"github.com/urfave/cli/v2"
 
 	"limsup/cmd/limsup/internal/table"
 	"limsup/data/measure"
 	"limsup/fit"
-	"limsup/fit/modelfile"
 	"limsup/validate"
 )
 
@@ -141,12 +139,7 @@ func predictAll(c *cli.Context, name string) (*validation, error) {
 
 // calibratedOn names the files of measurements that a model was calibrated on.
 func calibratedOn(model string, files []measure.FileInfo) ([]string, error) {
-	r, err := os.Open(model)
-	if err != nil {
-		return nil, err
-	}
-	defer r.Close()
-	f, err := modelfile.Decode(r, model)
+	f, err := decodeModel(model)
 	if err != nil {
 		return nil, err
 	}
