@@ -72,7 +72,7 @@ func (a *assembler) record(fields []string, at func(int) position) bool {
 	case len(a.ps) >= a.limits.problems:
 		a.fail(position{line: start.line + 1, where: start.where}, "", fmt.Sprintf("reading stopped after %d problems", a.limits.problems), "", nil)
 		return false
-	case len(a.set.Rows) > a.limits.rows:
+	case len(a.set.Rows)+len(a.set.Excluded) > a.limits.rows:
 		e := &LimitError{What: "rows", Limit: int64(a.limits.rows)}
 		a.fail(position{line: start.line, where: start.where}, "", e.Error(), "at most that (divide the file)", e)
 		return false

@@ -20,7 +20,7 @@ func (e *LimitError) Error() string {
 
 // limits are what a file may ask for. They are fields, not constants, for the sake of the tests.
 type limits struct {
-	rows     int   // kept of one file
+	rows     int   // kept of one file, with those excluded
 	problems int   // kept of one file; reading stops there
 	record   int64 // bytes of one record of a text file
 

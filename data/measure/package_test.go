@@ -147,6 +147,9 @@ func TestLimits(t *testing.T) {
 		{"merged", part("xl/worksheets/sheet1.xml", "<worksheet>"+many(11, `<mergeCell ref="A%d:A9"/>`)+"</worksheet>"), func(l *limits) { l.merged = 10 }, LimitError{"merged ranges", 10, ""}},
 		{"parts", whole(t, 12), func(l *limits) { l.parts = 10 }, LimitError{"parts in the archive", 10, ""}},
 		{"rows", sheet(headXML + many(12, `<row><c t="str"><v>f%d</v></c><c><v>420</v></c><c><v>1</v></c></row>`)), func(l *limits) { l.rows = 10 }, LimitError{"rows", 10, ""}},
+		// Equal rows pack well; each is excluded with a reason.
+		{"equal rows", sheet(headXML + strings.Repeat(`<row><c t="str"><v>f</v></c><c><v>420</v></c><c><v>1</v></c></row>`, 12)), func(l *limits) { l.rows = 10 }, LimitError{"rows", 10, ""}},
+		{"blank rows", sheet(headXML + strings.Repeat(`<row><c t="str"><v> </v></c></row>`, 12)), func(l *limits) { l.rows = 10 }, LimitError{"rows", 10, ""}},
 	} {
 		t.Run(tt.name, func(t *testing.T) {
 			l := defaultLimits()
