@@ -111,6 +111,9 @@ func (r *calibration) meta(seed uint64) modelfile.Meta {
 	for _, f := range r.Data.Files {
 		m.Inputs = append(m.Inputs, modelfile.Input{File: f.Name, SHA256: f.SHA256})
 	}
+	if !r.Converged {
+		m.Cautions = []string{"The calibration behind these parameters did not converge (" + r.Reason + ")."}
+	}
 	if cv := r.cv; cv != nil {
 		m.Verdict = string(cv.Verdict)
 		m.Statistics.CrossValidation = &modelfile.CrossValidation{Folds: cv.Folds.Kind, RMSE: cv.RMSE, UntunedRMSE: cv.UntunedRMSE, Difference: cv.Difference, DifferenceSE: cv.DifferenceSE}

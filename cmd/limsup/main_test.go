@@ -339,3 +339,25 @@ func TestStatusOfUnknownErrors(t *testing.T) {
 		t.Errorf("status %d, want %d", got, statusInternal)
 	}
 }
+
+// TestModelThatDidNotConverge: the model file of a search that stopped says so to whoever
+// predicts with it or carries it on.
+func TestModelThatDidNotConverge(t *testing.T) {
+	file := filepath.Join(t.TempDir(), "kink.json")
+	_, message, code := invoke(t, "calibrate", "--data", demo, "--tune", "prefactor", "--tune", "slope", "--folds", "none", "--out", file)
+	if code != statusNoAnswer || !strings.Contains(message, "not converged") {
+		t.Fatalf("status %d, %q; want a calibration that does not converge", code, message)
+	}
+	const want = "The calibration behind these parameters did not converge ("
+	if _, message, code := invoke(t, "predict", "--model", file, "--fluid", "n-pentane", "--pressure", "5 bar"); code != statusDone || !strings.Contains(message, want) {
+		t.Errorf("predict: status %d, %q", code, message)
+	}
+	if out, _, code := invoke(t, "export", "--model", file, "--as", "c"); code != statusDone || !strings.Contains(out, "// The calibration behind these parameters did not") {
+		t.Errorf("export: status %d, and the code does not tell", code)
+	}
+	good := filepath.Join(t.TempDir(), "good.json")
+	invoke(t, "calibrate", "--data", demo, "--folds", "none", "--out", good)
+	if _, message, _ := invoke(t, "predict", "--model", good, "--fluid", "n-pentane", "--pressure", "5 bar"); message != "" {
+		t.Errorf("a good model is doubted: %q", message)
+	}
+}

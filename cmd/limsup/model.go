@@ -2,9 +2,11 @@ package main
 
 import (
 	"fmt"
+	"slices"
 
 	"github.com/urfave/cli/v2"
 
+	"limsup/data/caution"
 	"limsup/data/fluid"
 	"limsup/data/quantity"
 	"limsup/fit"
@@ -28,7 +30,7 @@ func sourceFromFlags(c *cli.Context) (*source, error) {
 				return nil, &usageError{fmt.Sprintf("--model and --%s exclude each other: the model file holds its own", f)}
 			}
 		}
-		m, records, err := readModel(name)
+		m, records, err := readModel(c, name)
 		if err != nil {
 			return nil, err
 		}
@@ -72,10 +74,17 @@ func unlessGiven(records []*fluid.Record, c *cli.Context, lib *fluid.Library) []
 	return out
 }
 
-func readModel(name string) (*fit.Model, []*fluid.Record, error) {
+// readModel reads a model file, and says on standard error what is particular to it.
+func readModel(c *cli.Context, name string) (*fit.Model, []*fluid.Record, error) {
 	file, err := decodeModel(name)
 	if err != nil {
 		return nil, nil, err
+	}
+	usual := caution.Sentences()
+	for _, s := range file.Cautions {
+		if !slices.Contains(usual, s) {
+			fmt.Fprintln(c.App.ErrWriter, "limsup: warning: "+visible(name+": "+s))
+		}
 	}
 	return file.Model()
 }

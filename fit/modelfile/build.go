@@ -22,6 +22,8 @@ type Meta struct {
 	Statistics      Statistics
 	Verdict         string // "better", "no measurable gain", "worse", or "" if not cross-validated
 	Identifiability Identifiability
+	// Cautions stand beside those of every model file.
+	Cautions []string
 }
 
 // New gathers a model, the records of its fluids and what is known about it. The
@@ -31,7 +33,7 @@ type Meta struct {
 func New(m *fit.Model, records []*fluid.Record, meta Meta) (*File, error) {
 	v := &m.Variant
 	f := &File{
-		Format: Format, Version: Version, LimsupVersion: meta.Version, Cautions: caution.Sentences(),
+		Format: Format, Version: Version, LimsupVersion: meta.Version, Cautions: append(caution.Sentences(), meta.Cautions...),
 		Equation: newEquation(v),
 		Options: Options{Limit: string(v.Limit), SurfaceTension: string(v.Tension), Properties: string(v.Properties),
 			EmbryoPressure: string(v.EmbryoPressure), Kinetics: string(v.Kinetics)},
