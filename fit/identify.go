@@ -3,6 +3,7 @@ package fit
 import (
 	"fmt"
 	"math"
+	"slices"
 	"sort"
 	"strings"
 
@@ -136,6 +137,10 @@ func identify(h *mat.SymDense, active []int, l *layout, lik *likelihood) Identit
 	switch {
 	case d.Inflation > poorInflation:
 		names := direction(&vectors, active, l)
+		if name, ok := l.oneOf(names); ok {
+			d.Warnings = append(d.Warnings, "the data show no difference between the groups of "+name+": its pooled values are practically one")
+			break
+		}
 		d.Warnings = append(d.Warnings, fmt.Sprintf("in practice the data do not tell apart %s: were the others known, %s would be known %.0f times better. %s",
 			join(names), l.theta[active[worst]].Label(), d.Inflation, advice(names, lik)))
 	case len(d.Correlated) > 0:
@@ -177,6 +182,23 @@ func direction(vectors *mat.Dense, active []int, l *layout) []string {
 		}
 	}
 	return names
+}
+
+// oneOf names the pooled parameter to which all labels belong, if there is one.
+func (l *layout) oneOf(labels []string) (name string, ok bool) {
+	for _, p := range l.pools {
+		members := make([]string, 0, len(p.values)+1)
+		for _, i := range p.values {
+			members = append(members, l.theta[i].Label())
+		}
+		if p.mean >= 0 {
+			members = append(members, l.theta[p.mean].Label())
+		}
+		if !slices.ContainsFunc(labels, func(s string) bool { return !slices.Contains(members, s) }) {
+			return l.psi[p.spread].Name, true
+		}
+	}
+	return "", false
 }
 
 func join(names []string) string {

@@ -95,6 +95,13 @@ func TestWarnings(t *testing.T) {
 		{"surface tension beyond its range", []string{"the surface tension fit is used above the range that its source states for cyclohexane"},
 			scene{states(t, truth, []string{"cyclohexane"}, two, []float64{0}, 0.2), plan(t, "threshold")},
 			scene{states(t, truth, []string{"n-pentane"}, two, []float64{0}, 0.2), plan(t, "threshold")}},
+		{"a pool without spread", []string{"the data show no difference between the groups of surface-tension: its pooled values are practically one"},
+			scene{states(t, truth, several, two, []float64{-0.1, 0, 0.1}, 0.2), plan(t, "surface-tension/fluid/pooled")},
+			scene{edit(states(t, truth, several, two, []float64{-0.1, 0, 0.1}, 0.2), func(s *measure.Set) {
+				for i := range s.Rows {
+					s.Rows[i].Temperature += map[string]float64{"n-pentane": -2, "r-134a": 2}[s.Rows[i].Key]
+				}
+			}), plan(t, "surface-tension/fluid/pooled")}},
 		{"spread without adjustment", []string{"the spread is taken by maximum likelihood without adjustment"},
 			scene{states(t, truth, several[:1], one, []float64{0, 0}, 0.2), plan(t, "threshold", "prefactor")},
 			scene{states(t, truth, several, two, []float64{0}, 0.2), plan(t, "threshold")}},
