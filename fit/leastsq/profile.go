@@ -244,7 +244,7 @@ func (p *profile) inner(v float64, warm []float64) (float64, error) {
 	}
 	g, h := make([]float64, n), mat.NewSymDense(n, nil)
 	p.follow(v, warm, others, params, g, h)
-	r, err := Minimize(Objective{Params: params, Size: p.o.Size, Eval: func(x, grad []float64, curv *mat.SymDense) (float64, error) {
+	r, err := Minimize(Objective{Params: params, Size: p.o.Size, Rounding: p.o.Rounding, Eval: func(x, grad []float64, curv *mat.SymDense) (float64, error) {
 		p.theta[k] = v
 		for a, i := range others {
 			p.theta[i] = x[a]
