@@ -355,6 +355,9 @@ func TestModelThatDidNotConverge(t *testing.T) {
 	if out, _, code := invoke(t, "export", "--model", file, "--as", "c"); code != statusDone || !strings.Contains(out, "// The calibration behind these parameters did not") {
 		t.Errorf("export: status %d, and the code does not tell", code)
 	}
+	if out, _, _ := invoke(t, "report", "--model", file, "--data", demo); !strings.Contains(out, want) {
+		t.Error("report: the page does not tell")
+	}
 	good := filepath.Join(t.TempDir(), "good.json")
 	invoke(t, "calibrate", "--data", demo, "--folds", "none", "--out", good)
 	if _, message, _ := invoke(t, "predict", "--model", good, "--fluid", "n-pentane", "--pressure", "5 bar"); message != "" {

@@ -10,6 +10,7 @@ import (
 	"limsup/data/fluid"
 	"limsup/data/quantity"
 	"limsup/fit"
+	"limsup/fit/modelfile"
 )
 
 // source is what a command evaluates: a model and the fluids it knows.
@@ -80,13 +81,16 @@ func readModel(c *cli.Context, name string) (*fit.Model, []*fluid.Record, error)
 	if err != nil {
 		return nil, nil, err
 	}
-	usual := caution.Sentences()
-	for _, s := range file.Cautions {
-		if !slices.Contains(usual, s) {
-			fmt.Fprintln(c.App.ErrWriter, "limsup: warning: "+visible(name+": "+s))
-		}
+	for _, s := range particular(file) {
+		fmt.Fprintln(c.App.ErrWriter, "limsup: warning: "+visible(name+": "+s))
 	}
 	return file.Model()
+}
+
+// particular are the cautions of a model file that not every one has.
+func particular(file *modelfile.File) []string {
+	usual := caution.Sentences()
+	return slices.DeleteFunc(slices.Clone(file.Cautions), func(s string) bool { return slices.Contains(usual, s) })
 }
 
 // fluidsOf resolves --fluid.

@@ -63,7 +63,7 @@ func newReport(c *cli.Context, v *validation) (*report.Report, error) {
 		if err != nil {
 			return nil, err
 		}
-		r.Stored, r.Seed = file.Verdict, file.Seed
+		r.Stored, r.Seed, r.Warnings = file.Verdict, file.Seed, particular(file)
 		if v.allSeen() {
 			bar := startProgress(c, "repeating the calibration")
 			again, why, err := repeat(c, v, file, bar.Set)
@@ -79,7 +79,7 @@ func newReport(c *cli.Context, v *validation) (*report.Report, error) {
 			}
 		}
 	}
-	r.Warnings = v.warnings()
+	r.Warnings = append(r.Warnings, v.warnings()...)
 	if r.Calibration != nil {
 		var err error
 		if r.Effects, err = r.Calibration.Model().SideEffects(r.Calibration.Queries()); err != nil {
