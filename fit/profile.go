@@ -61,30 +61,10 @@ func (c *Calibration) Profile(label string, level float64) (Range, error) {
 	if !(level > 0 && level < 1) {
 		return Range{}, &OptionError{"level", fmt.Sprintf("%.10g", level), "a number between 0 and 1"}
 	}
-	at := -1
-	var labels []string
-	for i := range c.Parameters {
-		l := c.Parameters[i].Label()
-		labels = append(labels, l)
-		if l == label {
-			at = i
-		}
-	}
-	if at < 0 {
-		return Range{}, &OptionError{"profile", label, "one of " + strings.Join(labels, ", ")}
-	}
-	lay, err := newLayout(&c.Plan, c.Data.Observations)
+	lik, at, err := c.profiled(label)
 	if err != nil {
 		return Range{}, err
 	}
-	lik, err := newLikelihood(&c.Plan, c.Data.Observations, lay, 0)
-	if err != nil {
-		return Range{}, err
-	}
-	if err := lik.evaluate(c.theta); err != nil {
-		return Range{}, err
-	}
-	lik.hold()
 	e := &c.Parameters[at]
 	r := Range{Label: label, Unit: e.Unit, Level: level, Estimate: e.Value}
 	var iv leastsq.Interval
@@ -98,25 +78,21 @@ func (c *Calibration) Profile(label string, level float64) (Range, error) {
 			r.Warnings = append(r.Warnings, fmt.Sprintf("%.3g degrees of freedom are too few for a level of %g; the ends are those of t = %g", ν, level, float64(mostT)))
 			t = mostT
 		}
-		point := &leastsq.Result{X: c.theta, StdErr: make([]float64, len(c.theta))}
-		for i := range c.theta {
-			point.StdErr[i] = c.Parameters[i].U
-		}
-		iv, err = leastsq.Profile(c.inside(lik, c.objective(lik, lik.variances(c.psi, nil))), point, at, distuv.ChiSquared{K: 1}.CDF(t*t), leastsq.Settings{})
+		iv, err = leastsq.Profile(c.inside(lik, c.objective(lik, lik.variances(c.psi, nil))), c.point(), at, distuv.ChiSquared{K: 1}.CDF(t*t), leastsq.Settings{})
 		r.Lower, r.Upper, r.LowerEnd, r.UpperEnd = iv.Lower, iv.Upper, iv.LowerEnd, iv.UpperEnd
 	} else {
 		var z *linearised
-		if z, err = newLinearised(lik, c.theta, c.active(lay)); err != nil {
+		if z, err = newLinearised(lik, c.theta, c.active(lik.lay)); err != nil {
 			return Range{}, err
 		}
 		k := at - c.Locations
-		o := z.outer(c.psi, lay.psi)
+		o := z.outer(c.psi, lik.lay.psi)
 		point := &leastsq.Result{X: make([]float64, len(c.psi))}
 		for i, p := range o.Params {
 			point.X[i] = p.Start
 		}
 		iv, err = leastsq.Profile(o, point, k, level, leastsq.Settings{})
-		one := lay.psi[k : k+1]
+		one := lik.lay.psi[k : k+1]
 		a, b := unfold([]float64{iv.Lower}, one)[0], unfold([]float64{iv.Upper}, one)[0]
 		r.Lower, r.Upper, r.LowerEnd, r.UpperEnd = a, b, iv.LowerEnd, iv.UpperEnd
 		if a > b {
@@ -125,6 +101,65 @@ func (c *Calibration) Profile(label string, level float64) (Range, error) {
 	}
 	r.Warnings = append(r.Warnings, iv.Warnings...)
 	return r, err
+}
+
+// ProfileCurve returns by how much −ln L, minimised over the other locations with the
+// spreads at their estimates as in Profile, exceeds its minimum with a location held at
+// each of values, which lead away from its estimate to one side. Where it cannot be
+// followed further the list is shorter than values, and the error says why. told, if not
+// nil, hears how many values are done.
+//
+// Errors: those of Profile; *OptionError for a label of a spread.
+func (c *Calibration) ProfileCurve(label string, values []float64, told func(done int)) ([]float64, error) {
+	lik, at, err := c.profiled(label)
+	if err != nil {
+		return nil, err
+	}
+	if at >= c.Locations {
+		return nil, &OptionError{"profile curve", label, "a location, not a spread"}
+	}
+	rises, err := leastsq.Trace(c.inside(lik, c.objective(lik, lik.variances(c.psi, nil))), c.point(), at, values, leastsq.Settings{}, told)
+	if errors.Is(err, errSpinodal) {
+		err = errSpinodal
+	}
+	return rises, err
+}
+
+// profiled finds the parameter of a label, and the likelihood at the estimates.
+func (c *Calibration) profiled(label string) (lik *likelihood, at int, err error) {
+	at = -1
+	var labels []string
+	for i := range c.Parameters {
+		l := c.Parameters[i].Label()
+		labels = append(labels, l)
+		if l == label {
+			at = i
+		}
+	}
+	if at < 0 {
+		return nil, 0, &OptionError{"profile", label, "one of " + strings.Join(labels, ", ")}
+	}
+	lay, err := newLayout(&c.Plan, c.Data.Observations)
+	if err != nil {
+		return nil, 0, err
+	}
+	if lik, err = newLikelihood(&c.Plan, c.Data.Observations, lay, 0); err != nil {
+		return nil, 0, err
+	}
+	if err := lik.evaluate(c.theta); err != nil {
+		return nil, 0, err
+	}
+	lik.hold()
+	return lik, at, nil
+}
+
+// point is the minimum from which profiles start.
+func (c *Calibration) point() *leastsq.Result {
+	r := &leastsq.Result{X: c.theta, StdErr: make([]float64, len(c.theta))}
+	for i := range c.theta {
+		r.StdErr[i] = c.Parameters[i].U
+	}
+	return r
 }
 
 // errSpinodal ends a profile.

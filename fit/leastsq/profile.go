@@ -53,29 +53,15 @@ func (e *LowerMinimumError) Error() string {
 //
 // Errors: *InputError, *EvaluationError, *LowerMinimumError.
 func Profile(o Objective, at *Result, index int, level float64, s Settings) (Interval, error) {
-	if o.Eval == nil || at == nil {
-		return Interval{}, &InputError{"profile", "the objective or its minimum is missing"}
-	}
-	b, err := checkPoint(o.Params, at.X)
-	switch {
-	case err != nil:
-		return Interval{}, err
-	case index < 0 || index >= len(o.Params):
-		return Interval{}, &InputError{"profile", fmt.Sprintf("parameter index %d is not in 0 to %d", index, len(o.Params)-1)}
-	case !(level > 0 && level < 1):
+	if !(level > 0 && level < 1) {
 		return Interval{}, &InputError{"profile", fmt.Sprintf("level %g is not in (0, 1)", level)}
 	}
-	if err := s.check(); err != nil {
+	p, err := newProfile(o, at, index, s)
+	if err != nil {
 		return Interval{}, err
 	}
-	s.Local, s.Starts = true, 1
-	p := &profile{o: o, b: b, index: index, s: s, iv: Interval{Name: b.names[index], Level: level, Estimate: at.X[index]},
-		root: math.Sqrt(distuv.ChiSquared{K: 1}.Quantile(level)), theta: make([]float64, len(at.X))}
-	p.iv.Evaluations++
-	if p.min, err = o.Eval(at.X, nil, nil); err != nil || !finite(p.min) {
-		return Interval{}, &EvaluationError{Starts: 1, Theta: at.X, Err: err}
-	}
-	p.step = p.root * b.size(index, at.X[index]) / 10
+	p.iv.Level, p.root = level, math.Sqrt(distuv.ChiSquared{K: 1}.Quantile(level))
+	p.step = p.root * p.b.size(index, at.X[index]) / 10
 	if len(at.StdErr) == len(at.X) && at.StdErr[index] > 0 {
 		p.step = p.root * at.StdErr[index]
 	}
@@ -86,6 +72,56 @@ func Profile(o Objective, at *Result, index int, level float64, s Settings) (Int
 		return Interval{}, err
 	}
 	return p.iv, nil
+}
+
+// Trace returns by how much the objective, minimised over all other parameters, exceeds
+// its minimum at with parameter index held at each of values, which lead away from there
+// to one side. The list ends before a value for which there is an error. told, if not nil,
+// hears how many values are done.
+//
+// Errors: those of Profile, beside what was found before.
+func Trace(o Objective, at *Result, index int, values []float64, s Settings, told func(done int)) ([]float64, error) {
+	p, err := newProfile(o, at, index, s)
+	if err != nil {
+		return nil, err
+	}
+	warm := append([]float64(nil), at.X...)
+	var rises []float64
+	for k, v := range values {
+		if told != nil {
+			told(k)
+		}
+		f, err := p.minimum(v, warm)
+		if err != nil {
+			return rises, err
+		}
+		rises = append(rises, math.Max(0, f-p.min))
+	}
+	return rises, nil
+}
+
+// newProfile checks what all profiles begin with and evaluates the minimum.
+func newProfile(o Objective, at *Result, index int, s Settings) (*profile, error) {
+	if o.Eval == nil || at == nil {
+		return nil, &InputError{"profile", "the objective or its minimum is missing"}
+	}
+	b, err := checkPoint(o.Params, at.X)
+	switch {
+	case err != nil:
+		return nil, err
+	case index < 0 || index >= len(o.Params):
+		return nil, &InputError{"profile", fmt.Sprintf("parameter index %d is not in 0 to %d", index, len(o.Params)-1)}
+	}
+	if err := s.check(); err != nil {
+		return nil, err
+	}
+	s.Local, s.Starts = true, 1
+	p := &profile{o: o, b: b, index: index, s: s, iv: Interval{Name: b.names[index], Estimate: at.X[index]}, theta: make([]float64, len(at.X))}
+	p.iv.Evaluations++
+	if p.min, err = o.Eval(at.X, nil, nil); err != nil || !finite(p.min) {
+		return nil, &EvaluationError{Starts: 1, Theta: at.X, Err: err}
+	}
+	return p, nil
 }
 
 type profile struct {
@@ -210,6 +246,15 @@ func (p *profile) cross(a, fa, b, fb float64, warm []float64) (float64, End, err
 // rise is √(2(minimum over the others − min)) − √χ² with the parameter at v.
 // warm is the point to start from and becomes the minimum found.
 func (p *profile) rise(v float64, warm []float64) (float64, error) {
+	f, err := p.minimum(v, warm)
+	if err != nil {
+		return 0, err
+	}
+	return math.Sqrt(2*math.Max(0, f-p.min)) - p.root, nil
+}
+
+// minimum is that over the others, which must not be below min.
+func (p *profile) minimum(v float64, warm []float64) (float64, error) {
 	f, err := p.inner(v, warm)
 	if err != nil {
 		return 0, err
@@ -217,7 +262,7 @@ func (p *profile) rise(v float64, warm []float64) (float64, error) {
 	if slack := 1e-6 + 1e-9*math.Abs(p.min); f < p.min-slack {
 		return 0, &LowerMinimumError{p.iv.Name, f, p.min, append([]float64(nil), warm...)}
 	}
-	return math.Sqrt(2*math.Max(0, f-p.min)) - p.root, nil
+	return f, nil
 }
 
 // inner minimises over the other parameters.

@@ -1,32 +1,25 @@
 package plot
 
 import (
-	"cmp"
 	"fmt"
 	"math"
-	"slices"
+	"sort"
 
 	"gonum.org/v1/gonum/stat/distuv"
 
 	"limsup/fit"
 )
 
-// heldWidth is the part of a standard uncertainty within which a profiled parameter
-// is held. The hold adds (shift/width)² to twice the objective; the search balances
-// it against the slope of the profile, about 5/u at 2.5 u, so that the shift is about
-// 2.5·heldWidth² u, and its error in −2Δln L about 1e-5.
-const heldWidth = 1e-3
-
 // Profiles shows for each location parameter how far twice the log likelihood
-// falls when the parameter is held away from its estimate and all others are tuned
-// anew, beside the parabola of the standard uncertainty. told, if not nil, hears how
+// falls when the parameter is held away from its estimate and the other locations are
+// tuned anew, beside the parabola of the standard uncertainty. The curve and its level
+// are those of fit.Calibration.Profile. told, if not nil, hears how
 // many of the points are done.
 //
 // Errors: *EmptyError without a parameter that has an uncertainty.
 func Profiles(c *fit.Calibration, told func(done, total int)) (*Figure, error) {
 	f := &Figure{ID: "profile", Kind: "profile", Title: "Profile likelihoods",
-		Caption: "How much worse the data fit, in units of −2Δln L, when one parameter is held and all others are tuned again. Where the curve crosses the level line lie the ends of a 95 % interval. A curve that follows the dashed parabola vindicates the standard uncertainty; a lopsided or flat one does not, and then the interval of the curve is to be used."}
-	limit := distuv.ChiSquared{K: 1}.Quantile(0.95)
+		Caption: "How much worse the data fit, in units of −2Δln L, when one parameter is held and the others are tuned again, spreads apart. Where the curve crosses the level line lie the ends of a 95 % interval. A curve that follows the dashed parabola vindicates the standard uncertainty; a lopsided or flat one does not, and then the interval of the curve is to be used."}
 	var names []int
 	for i := range c.Parameters[:c.Locations] {
 		if e := &c.Parameters[i]; e.HasU && e.Role == fit.RoleValue {
@@ -51,7 +44,7 @@ func Profiles(c *fit.Calibration, told func(done, total int)) (*Figure, error) {
 			}
 		})
 		if failed != nil {
-			f.Notes = append(f.Notes, fmt.Sprintf("The profile of %s ends where the tuning with it held has no smooth answer: %s.", Visible(e.Label()), failed))
+			f.Notes = append(f.Notes, fmt.Sprintf("The profile of %s cannot be followed further: %s.", Visible(e.Label()), failed))
 		}
 		if len(points.X) < 3 {
 			continue
@@ -68,7 +61,7 @@ func Profiles(c *fit.Calibration, told func(done, total int)) (*Figure, error) {
 			label += "/" + unit
 		}
 		f.Panels = append(f.Panels, Panel{Title: Visible(e.Label()), X: Axis{Label: label}, Y: Axis{Label: "−2Δln L"}, Series: []Series{
-			{Name: "95 % level", Shape: Level, Y: []float64{limit}, Style: Style{Colour: Ink, Dash: Dotted}},
+			{Name: "95 % level", Shape: Level, Y: []float64{level(c, e)}, Style: Style{Colour: Ink, Dash: Dotted}},
 			parabola, curve, points}})
 	}
 	if len(f.Panels) == 0 {
@@ -87,65 +80,49 @@ func sides(rows int) [2][]float64 {
 	return [2][]float64{{0, 0.5, 1, 1.5, 2, 2.5}, {-0.5, -1, -1.5, -2, -2.5}}
 }
 
-// profile tunes the plan with one parameter held on both sides of its estimate; told
-// hears how many are done. failed is why the profile ends early, or nil.
+// level is the height at which a profile ends a 95 % interval: t² of Student's law.
+func level(c *fit.Calibration, e *fit.Estimate) float64 {
+	ν := e.Degrees
+	if ν == 0 {
+		ν = float64(c.Degrees)
+	}
+	t := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: ν}.Quantile(0.975)
+	return t * t
+}
+
+// profile follows the likelihood of one parameter to both sides of its estimate; told
+// hears how many points are done. failed is why the profile ends early, or nil.
 func profile(c *fit.Calibration, e *fit.Estimate, sides [2][]float64, told func(done int)) (points Series, failed error) {
 	points = Series{Name: "tuned with the parameter held", Shape: Points, Style: Style{Colour: First, Marker: Circle}}
-	type point struct{ x, drop float64 }
-	var found []point
 	done := 0
 	for _, side := range sides {
-		warm := c
+		var values []float64
 		for _, k := range side {
-			told(done)
-			done++
-			x := e.Value + k*e.U
-			if x <= e.Lower || x >= e.Upper {
-				continue
+			if x := e.Value + k*e.U; x > e.Lower && x < e.Upper {
+				values = append(values, x)
 			}
-			held, err := hold(c, e, x, warm)
-			if err == nil {
-				err = smooth(c, held)
-			}
-			if err != nil {
-				failed = err
-				break
-			}
-			warm = held
-			found = append(found, point{x, -2 * held.LogLik})
+		}
+		rises, err := c.ProfileCurve(e.Label(), values, func(k int) { told(done + k) })
+		if err != nil {
+			failed = err
+		}
+		done += len(side)
+		for k, r := range rises {
+			points.X, points.Y = append(points.X, values[k]), append(points.Y, 2*r)
 		}
 	}
-	slices.SortFunc(found, func(a, b point) int { return cmp.Compare(a.x, b.x) })
-	lowest := math.Inf(1)
-	for _, p := range found {
-		lowest = math.Min(lowest, p.drop)
-	}
-	for _, p := range found {
-		points.X, points.Y = append(points.X, p.x), append(points.Y, p.drop-lowest)
-	}
+	sort.Sort(byX(points))
 	return points, failed
 }
 
-// unsmoothError says why a held tuning is no point of a profile.
-type unsmoothError string
+// byX orders the points of a series from left to right.
+type byX Series
 
-func (e unsmoothError) Error() string { return string(e) }
-
-// smooth refuses a tuning that did not converge, or in which the spinodal stands in
-// for the kinetic limit of a row that had one at the estimates: there the likelihood
-// is that of another model.
-func smooth(c, held *fit.Calibration) error {
-	if !held.Converged {
-		return unsmoothError("the search does not converge")
-	}
-	if c.Plan.Variant.Limit == fit.Kinetic {
-		for i := range held.Rows {
-			if held.Rows[i].Log10Flux == 0 && c.Rows[i].Log10Flux != 0 {
-				return unsmoothError("the flux of " + Visible(c.Data.Observations[i].Record.Key) + " does not reach its target before the spinodal")
-			}
-		}
-	}
-	return nil
+func (s byX) Len() int           { return len(s.X) }
+func (s byX) Less(i, j int) bool { return s.X[i] < s.X[j] }
+func (s byX) Swap(i, j int) {
+	s.X[i], s.X[j] = s.X[j], s.X[i]
+	s.Y[i], s.Y[j] = s.Y[j], s.Y[i]
 }
 
 // join draws a curve through the points of a profile. The root of a profile with
@@ -168,12 +145,4 @@ func join(points *Series, estimate float64) Series {
 	last := len(points.X) - 1
 	curve.X, curve.Y = append(curve.X, points.X[last]), append(curve.Y, points.Y[last])
 	return curve
-}
-
-// hold tunes with a parameter held at x by a prior that is much narrower than its
-// uncertainty, which works for one value of a group as well.
-func hold(c *fit.Calibration, e *fit.Estimate, x float64, warm *fit.Calibration) (*fit.Calibration, error) {
-	p := c.Plan
-	p.Priors = append(slices.Clone(p.Priors), fit.Prior{Name: e.Name, Group: e.Group, Mean: x, Spread: heldWidth * e.U})
-	return fit.Calibrate(c.Data, p, fit.Options{Warm: warm})
 }
