@@ -125,7 +125,7 @@ func TestPredictIsHonest(t *testing.T) {
 		}
 	})
 	t.Logf("%d predictions", found)
-	if found < 10 {
+	if found < 5 { // of 100 draws, or of 20 with -short
 		t.Errorf("only %d predictions: hardly tried", found)
 	}
 }

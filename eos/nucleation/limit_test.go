@@ -230,7 +230,7 @@ func TestLimitProperties(t *testing.T) {
 		}
 	})
 	t.Logf("%d limits, %d without; at most %d evaluations", found, none, steps)
-	if found < 10 {
+	if found < 5 { // of 100 draws, or of 20 with -short
 		t.Errorf("only %d limits found: the property has hardly been tried", found)
 	}
 }
