@@ -29,22 +29,12 @@ func BenchmarkGradient(b *testing.B) {
 	}
 	for _, kind := range []NoiseKind{Gaussian, Student, Survival} {
 		p := Plan{Noise: Noise{Kind: kind}, Terms: []Term{{Name: Prefactor}, {Name: SurfaceTension}, {Name: Slope, By: ByFluid}}}
-		if p, err = p.Complete(); err != nil {
-			b.Fatal(err)
-		}
 		d, err := Prepare(set, lib, p)
 		if err != nil {
 			b.Fatal(err)
 		}
-		lay, err := newLayout(&p, d.Observations)
-		if err != nil {
-			b.Fatal(err)
-		}
-		lik, err := newLikelihood(&p, d.Observations, lay, 1)
-		if err != nil {
-			b.Fatal(err)
-		}
-		theta, psi := starts(lay.theta), starts(lay.psi)
+		lik := likelihoodOf(b, p, d)
+		theta, psi := starts(lik.lay.theta), starts(lik.lay.psi)
 		theta[0] = -5
 		if err := lik.evaluate(theta); err != nil {
 			b.Fatal(err)

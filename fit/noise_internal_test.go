@@ -50,6 +50,24 @@ func TestNoiseSlopes(t *testing.T) {
 	}
 }
 
+// likelihoodOf is the objective of a plan on one processor.
+func likelihoodOf(t testing.TB, p Plan, d *Data) *likelihood {
+	t.Helper()
+	p, err := p.Complete()
+	if err != nil {
+		t.Fatal(err)
+	}
+	lay, err := newLayout(&p, d.Observations)
+	if err != nil {
+		t.Fatal(err)
+	}
+	lik, err := newLikelihood(&p, d.Observations, lay, 1)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return lik
+}
+
 // TestNoiseNormalised integrates the densities of rows that boiled, and the information
 // that they carry: E[dr²] = irr and E[dv²] = ivv.
 func TestNoiseNormalised(t *testing.T) {
@@ -112,17 +130,8 @@ func TestLikelihoodGradient(t *testing.T) {
 		if err != nil || len(d.Observations) != 8 {
 			t.Fatalf("%d observations: %v", len(d.Observations), err)
 		}
-		if p, err = p.Complete(); err != nil {
-			t.Fatal(err)
-		}
-		lay, err := newLayout(&p, d.Observations)
-		if err != nil {
-			t.Fatal(err)
-		}
-		lik, err := newLikelihood(&p, d.Observations, lay, 1)
-		if err != nil {
-			t.Fatal(err)
-		}
+		lik := likelihoodOf(t, p, d)
+		lay := lik.lay
 		theta, psi := starts(lay.theta), starts(lay.psi)
 		for i := range theta {
 			theta[i] += 0.003 * float64(i+1)

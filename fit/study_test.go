@@ -71,14 +71,19 @@ func fillStudy(lib *fluid.Library, m *fit.Model, set *measure.Set, e func(x fit.
 	return nil
 }
 
-// checkStudy calibrates and looks where the truths are: of parameters, of the limit
-// of a state that was not measured, and of a new reading there.
-func checkStudy(lib *fluid.Library, set *measure.Set, truth *fit.Model, p fit.Plan, names []string, reading func(limit float64, κ float64) float64, more func(q *fit.Query)) (map[string]bool, error) {
+// calibrateStudy tunes the plan to one drawn set.
+func calibrateStudy(lib *fluid.Library, set *measure.Set, p fit.Plan) (*fit.Calibration, error) {
 	d, err := fit.Prepare(set, lib, p)
 	if err != nil {
 		return nil, err
 	}
-	c, err := fit.Calibrate(d, p, fit.Options{Workers: 1})
+	return fit.Calibrate(d, p, fit.Options{Workers: 1})
+}
+
+// checkStudy calibrates and looks where the truths are: of parameters, of the limit
+// of a state that was not measured, and of a new reading there.
+func checkStudy(lib *fluid.Library, set *measure.Set, truth *fit.Model, p fit.Plan, names []string, reading func(limit float64, κ float64) float64, more func(q *fit.Query)) (map[string]bool, error) {
+	c, err := calibrateStudy(lib, set, p)
 	if err != nil {
 		return nil, err
 	}
@@ -146,11 +151,7 @@ var studyCases = []studyCase{
 			return nil, err
 		}
 		p := fit.Plan{Terms: terms(t, "threshold", "slope")}
-		d, err := fit.Prepare(set, lib, p)
-		if err != nil {
-			return nil, err
-		}
-		c, err := fit.Calibrate(d, p, fit.Options{Workers: 1})
+		c, err := calibrateStudy(lib, set, p)
 		if err != nil {
 			return nil, err
 		}
