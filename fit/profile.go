@@ -78,7 +78,7 @@ func (c *Calibration) Profile(label string, level float64) (Range, error) {
 			r.Warnings = append(r.Warnings, fmt.Sprintf("%.3g degrees of freedom are too few for a level of %g; the ends are those of t = %g", ν, level, float64(mostT)))
 			t = mostT
 		}
-		iv, err = leastsq.Profile(c.inside(lik, c.objective(lik, lik.variances(c.psi, nil))), c.point(), at, distuv.ChiSquared{K: 1}.CDF(t*t), leastsq.Settings{})
+		iv, err = leastsq.Profile(c.inside(lik, c.objective(lik, lik.variances(c.psi, nil))), c.point(), at, distuv.ChiSquared{K: 1}.CDF(t*t), profileSettings())
 		r.Lower, r.Upper, r.LowerEnd, r.UpperEnd = iv.Lower, iv.Upper, iv.LowerEnd, iv.UpperEnd
 	} else {
 		var z *linearised
@@ -118,7 +118,7 @@ func (c *Calibration) ProfileCurve(label string, values []float64, told func(don
 	if at >= c.Locations {
 		return nil, &OptionError{"profile curve", label, "a location, not a spread"}
 	}
-	rises, err := leastsq.Trace(c.inside(lik, c.objective(lik, lik.variances(c.psi, nil))), c.point(), at, values, leastsq.Settings{}, told)
+	rises, err := leastsq.Trace(c.inside(lik, c.objective(lik, lik.variances(c.psi, nil))), c.point(), at, values, profileSettings(), told)
 	if errors.Is(err, errSpinodal) {
 		err = errSpinodal
 	}
@@ -160,6 +160,12 @@ func (c *Calibration) point() *leastsq.Result {
 		r.StdErr[i] = c.Parameters[i].U
 	}
 	return r
+}
+
+// profileSettings are those of the searches behind a profile. They begin close to their
+// ends; one that takes longer creeps along the edge of the spinodal.
+func profileSettings() leastsq.Settings {
+	return leastsq.Settings{MaxIterations: 30, Tolerance: tolerance}
 }
 
 // errSpinodal ends a profile.
