@@ -12,7 +12,7 @@ import (
 	"limsup/fit/leastsq"
 )
 
-// Options are settings of a calibration that do not change its result.
+// Options are settings of a calibration that do not change its estimates.
 type Options struct {
 	Workers int // goroutines over rows; 0: as many as processors
 	// Warm starts the search from an earlier calibration of the same plan.

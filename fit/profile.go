@@ -55,6 +55,9 @@ const mostT = 8
 // For a spread, the restricted likelihood A (see spreads.go), minimised over the
 // other spreads, may rise by half a quantile of χ² with one degree of freedom.
 //
+// Where a row that has a kinetic limit at the estimates would lose it, the interval of a
+// location ends as not evaluable beyond: the model predicts nothing there.
+//
 // Errors: *OptionError for an unknown label or level, *leastsq.LowerMinimumError when
 // the estimates are not the optimum, those of Calibrate.
 func (c *Calibration) Profile(label string, level float64) (Range, error) {
